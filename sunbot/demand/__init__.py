@@ -1,0 +1,1 @@
+"""Duty cycle and rails: loads in, `Demand` at the battery out."""

@@ -1,0 +1,1 @@
+"""What the user writes: a site file and a robot file in, frozen checked models out."""

@@ -1,0 +1,1 @@
+"""The answers as people read them: terminal text, plots, JSON and CSV, starter files."""

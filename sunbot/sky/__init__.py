@@ -1,0 +1,1 @@
+"""Weather above the site: a site's source (file, climate, clear sky) in, whole years of `Weather` out."""
