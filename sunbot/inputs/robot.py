@@ -4,11 +4,11 @@ from __future__ import annotations
 
 from typing import Literal
 
+from .chemistries import Chemistry
 from .fields import Flag, Number, Part, Text, Twelve, Whole, key
 from .site import Site
 
 Weekday = Literal["mon", "tue", "wed", "thu", "fri", "sat", "sun"]
-Chemistry = Literal["lifepo4", "li-ion", "nimh", "lead-acid"]
 
 
 class Target(Part):
