@@ -1,0 +1,346 @@
+"""What several keys of an input file must hold together."""
+
+from __future__ import annotations
+
+import difflib
+import re
+from collections.abc import Iterator
+from datetime import datetime
+from itertools import pairwise
+from typing import TYPE_CHECKING
+from zoneinfo import ZoneInfo, ZoneInfoNotFoundError, available_timezones
+
+from .fields import Path, Problem
+
+if TYPE_CHECKING:
+    from .robot import Battery, Controller, Deployment, Load, Panel, Rail, Robot
+    from .site import Climate, Site, WeatherSource
+    from .window import Window
+
+MONTHS = "January February March April May June July August September October November December".split()
+DAYS_IN_MONTH = (31, 29, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31)
+SHEET_MISMATCH = 0.05
+"""How far watts may differ from vmp_v x imp_a; common practice: data sheets round."""
+STRING_MISMATCH = 0.10
+"""How far the voltages of strings on one tracker may differ; common practice."""
+TOUCH_V = 1e-6
+"""Voltages this close agree: sums of decimals round."""
+CLOCK_FROM_SUN_H = 5.0
+"""No inhabited place keeps a clock this far from the sun; common practice: western China is 3 h off."""
+
+
+def site(site: Site) -> Iterator[Problem]:
+    """Time zone, its fit to the longitude, and the order of the horizon."""
+    zone = _zone(site.time_zone)
+    if zone is None:
+        yield Problem(("time_zone",), f'"{site.time_zone}" is no time zone', _zone_remedy(site.time_zone))
+    elif not site.time_zone.startswith(("UTC", "Etc/", "GMT", "Antarctica/")):
+        offset = zone.utcoffset(datetime(2018, 1, 15))
+        clock_h = offset.total_seconds() / 3600 if offset is not None else 0.0
+        if abs((clock_h - site.longitude / 15 + 12) % 24 - 12) > CLOCK_FROM_SUN_H:
+            yield Problem(
+                ("longitude",),
+                f"{site.longitude:g} is half a world away from the clock of {site.time_zone} (UTC{clock_h:+g} h)",
+                f"degrees east as positive and west as negative, near {15 * clock_h:g}; or the zone of the place",
+                judged=(("time_zone",),),
+            )
+    azimuths = [azimuth for azimuth, _ in site.horizon]
+    if any(b <= a for a, b in pairwise(azimuths)):
+        pairs = sorted(dict(site.horizon).items())
+        yield Problem(("horizon",), "its azimuths do not rise", f"horizon = {_pairs(pairs)}")
+
+
+def _zone(name: str) -> ZoneInfo | None:
+    # names that follow the machine rather than the place
+    if name in {"localtime", "posixrules", "Factory"}:
+        return None
+    try:
+        return ZoneInfo(name)
+    except (ZoneInfoNotFoundError, ValueError, OSError):
+        return None
+
+
+def _zone_remedy(name: str) -> str:
+    known = sorted(available_timezones())
+    wanted = name.strip().lower().replace(" ", "_")
+    city = [zone for zone in known if wanted and wanted in {zone.lower(), zone.lower().rsplit("/", 1)[-1]}]
+    by_lower = {zone.lower(): zone for zone in known}
+    near = city or [by_lower[match] for match in difflib.get_close_matches(wanted, by_lower, n=3, cutoff=0.6)]
+    names = " or ".join(f'"{zone}"' for zone in near[:3]) or 'a name such as "Europe/Zurich" or "UTC"'
+    return f"the IANA name of the place's clock: {names}"
+
+
+def weather_source(weather: WeatherSource) -> Iterator[Problem]:
+    """Each source has the keys it needs."""
+    named = "source" in weather.model_fields_set
+    if weather.source == "file" and weather.file is None:
+        yield Problem(
+            ("file",), 'is missing; source "file" needs it', 'e.g. file = "tower-2019-2023.csv"', (("source",),)
+        )
+    if not named and weather.file is not None:
+        yield Problem(("source",), f'is missing although file is "{weather.file}"', 'source = "file"', (("file",),))
+    if weather.source == "nasa-power":
+        for name in ("first_year", "last_year"):
+            if getattr(weather, name) is None:
+                yield Problem(
+                    (name,), 'is missing; source "nasa-power" needs it', f"e.g. {name} = 2010", (("source",),)
+                )
+    first, last = weather.first_year, weather.last_year
+    if first is not None and last is not None and first > last:
+        wrong = f"{last} is before first_year = {first}"
+        yield Problem(("last_year",), wrong, f"first_year = {last} and last_year = {first}", (("first_year",),))
+    if weather.stamps_in is not None and not _is_clock(weather.stamps_in):
+        wrong = f'"{weather.stamps_in}" is no clock'
+        yield Problem(("stamps_in",), wrong, 'stamps_in = "UTC", an offset such as "+01:00", or an IANA zone name')
+
+
+def _is_clock(name: str) -> bool:
+    return re.fullmatch(r"[+-](0\d|1[0-4]):[0-5]\d", name) is not None or _zone(name) is not None
+
+
+def climate(climate: Climate) -> Iterator[Problem]:
+    """The minimum of a month is below its maximum, and some month has light."""
+    swapped = [m for m, (a, b) in enumerate(zip(climate.temp_min_c, climate.temp_max_c, strict=True)) if a > b]
+    if swapped:
+        months = "every month" if len(swapped) == 12 else ", ".join(MONTHS[month] for month in swapped)
+        yield Problem(
+            ("temp_min_c",),
+            f"is above temp_max_c in {months}",
+            "the mean daily minimum here and the maximum in temp_max_c; they seem swapped",
+            judged=(("temp_max_c",),),
+        )
+    if not any(climate.ghi_kwh_m2_day):
+        yield Problem(("ghi_kwh_m2_day",), "has no light in any month", "the mean daily kWh/m2 of each month")
+
+
+def window(window: Window) -> Iterator[Problem]:
+    """Room temperatures in order, lamps with hours."""
+    if window.room_min_c > window.room_max_c:
+        wrong = f"{window.room_min_c:g} is above room_max_c = {window.room_max_c:g}"
+        remedy = f"room_min_c = {window.room_max_c:g} and room_max_c = {window.room_min_c:g}"
+        yield Problem(("room_min_c",), wrong, remedy, (("room_max_c",),))
+    if window.lamp_lux > 0 and not window.lamp_hours:
+        wrong = f"are missing although lamp_lux is {window.lamp_lux:g}"
+        yield Problem(("lamp_hours",), wrong, "e.g. lamp_hours = [[8, 18]]", (("lamp_lux",),))
+    yield from _spans(window.lamp_hours, "lamp_hours")
+
+
+def deployment(deployment: Deployment) -> Iterator[Problem]:
+    """Both days exist in every year."""
+    for name, day in (("from", deployment.start), ("to", deployment.end)):
+        if day == "02-29":
+            yield Problem((name,), '"02-29" comes only in leap years', f'{name} = "02-28" or {name} = "03-01"')
+        elif month_and_day(day) == (0, 0):
+            yield Problem((name,), f'"{day}" is no day of the year', f'month and day as MM-DD, e.g. {name} = "03-15"')
+
+
+def month_and_day(day: str) -> tuple[int, int]:
+    """Month and day of ``MM-DD``; (0, 0) where there is no such day."""
+    match = re.fullmatch(r"([0-9]{2})-([0-9]{2})", day)
+    month, of_month = (int(match[1]), int(match[2])) if match else (0, 0)
+    return (month, of_month) if 1 <= month <= 12 and 1 <= of_month <= DAYS_IN_MONTH[month - 1] else (0, 0)
+
+
+def panel(panel: Panel) -> Iterator[Problem]:
+    """The data sheet is one that a panel can have."""
+    for inner, outer in (("vmp_v", "voc_v"), ("imp_a", "isc_a")):
+        low, high = getattr(panel, inner), getattr(panel, outer)
+        if low is not None and high is not None and low >= high:
+            wrong = f"{low:g} is not below {outer} = {high:g}"
+            remedy = f"the value at maximum power here and the larger one in {outer}; they seem swapped"
+            yield Problem((inner,), wrong, remedy, ((outer,),))
+    if panel.vmp_v is not None and panel.imp_a is not None:
+        sheet_w = panel.vmp_v * panel.imp_a
+        if abs(sheet_w / panel.watts - 1) > SHEET_MISMATCH:
+            yield Problem(
+                ("watts",),
+                f"{panel.watts:g} is not vmp_v x imp_a = {panel.vmp_v:g} x {panel.imp_a:g} = {sheet_w:.4g}",
+                "the three as the data sheet of one panel has them (they may differ by 5 %)",
+                judged=(("vmp_v",), ("imp_a",)),
+            )
+    for number, (start, end, _) in enumerate(panel.obstructions):
+        if start == end:
+            wrong = f"begins and ends at {start:g} deg"
+            yield Problem(("obstructions", number), wrong, "from and to, clockwise, e.g. [170, 190, 60]")
+
+
+def controller(controller: Controller) -> Iterator[Problem]:
+    """An efficiency curve is complete and rises in its shares."""
+    curve = controller.efficiency_curve
+    if curve is None:
+        return
+    if controller.rated_w is None:
+        wrong = "is missing; efficiency_curve is given in shares of it"
+        yield Problem(("rated_w",), wrong, "e.g. rated_w = 75", (("efficiency_curve",),))
+    shares = [share for share, _ in curve]
+    rising = all(b > a for a, b in pairwise(shares))
+    if not curve or not rising or min(shares) < 0 or not all(0 < efficiency <= 1 for _, efficiency in curve):
+        yield Problem(
+            ("efficiency_curve",),
+            "is no curve: its shares must rise from 0 or more, its efficiencies lie above 0 and up to 1",
+            "e.g. efficiency_curve = [[0.05, 0.85], [0.3, 0.95], [1, 0.94]]",
+        )
+
+
+def battery(battery: Battery) -> Iterator[Problem]:
+    """Thresholds and temperature window in order."""
+    if battery.cutoff_soc >= battery.restart_soc:
+        given = battery.model_fields_set
+        yield Problem(
+            ("restart_soc",),
+            f"{battery.restart_soc:g} is not above cutoff_soc = {battery.cutoff_soc:g}",
+            f"a restart_soc above {battery.cutoff_soc:g}, or both left out for the usual shares of {battery.chemistry}",
+            judged=tuple((name,) for name in ("cutoff_soc", "chemistry") if name in given),
+        )
+    low, high = battery.charge_min_c, battery.charge_max_c
+    if low is not None and high is not None and low >= high:
+        wrong = f"{low:g} is not below charge_max_c = {high:g}"
+        yield Problem(("charge_min_c",), wrong, "the colder of the two here", (("charge_max_c",),))
+
+
+def rail(rail: Rail) -> Iterator[Problem]:
+    """A converter has a voltage, a straight rail has none."""
+    if rail.kind == "none" and rail.volts is not None:
+        wrong = f'{rail.volts:g} is given for kind "none", which has the battery\'s voltage'
+        yield Problem(("volts",), wrong, 'nothing here, or kind = "step-down"', (("kind",),))
+    if rail.kind != "none" and rail.volts is None:
+        yield Problem(("volts",), f'is missing; kind "{rail.kind}" needs it', "e.g. volts = 5.0", (("kind",),))
+
+
+def load(load: Load) -> Iterator[Problem]:
+    """One way to say the power, hours that run forward, lists without gaps or doubles."""
+    given = [name for name in ("watts", "amps", "traction") if getattr(load, name) is not None]
+    if not given:
+        yield Problem(("watts",), "is missing, and so are amps and traction", "one of the three, e.g. watts = 4.0")
+    if len(given) > 1:
+        wrong = f"stands beside {given[0]}, and both say what it draws"
+        yield Problem((given[1],), wrong, f"only one of {' and '.join(given)}", tuple((name,) for name in given))
+    if load.hours is not None:
+        yield from _spans(load.hours, "hours", required=True)
+    for name, values in (("months", load.months), ("weekdays", load.weekdays)):
+        doubles = [value for value in dict.fromkeys(values) if values.count(value) > 1]
+        if not values:
+            yield Problem(
+                (name,), "is empty, so the load would never work", f"at least one, or leave {name} out for all"
+            )
+        if doubles:
+            yield Problem((name,), f"names {doubles[0]} twice", f"each of the {name} once")
+
+
+def _spans(spans: tuple[tuple[float, float], ...], name: str, required: bool = False) -> Iterator[Problem]:
+    """Spans of the day lie within it, run forward and do not overlap."""
+    if required and not spans:
+        yield Problem((name,), "is empty, so the load would never work", f"e.g. {name} = [[9, 17]], or leave it out")
+    for number, (start, end) in enumerate(spans):
+        if not (0 <= start <= 24 and 0 <= end <= 24):
+            wrong = f"[{start:g}, {end:g}] is outside the day"
+            yield Problem((name, number), wrong, "hours from 0 to 24, e.g. [9, 17] or [9.5, 11.25]")
+    if any(not 0 <= hour <= 24 for span in spans for hour in span):
+        return
+    backward = [(start, end) for start, end in spans if start >= end]
+    if backward:
+        start, end = backward[0]
+        wrong = f"[{start:g}, {end:g}] does not run forward within the day"
+        yield Problem((name,), wrong, f"{name} = {_pairs(_within_days(spans))}")
+        return
+    ordered = sorted(spans)
+    for (a, b), (c, d) in pairwise(ordered):
+        if c < b:
+            wrong = f"[{a:g}, {b:g}] and [{c:g}, {d:g}] overlap"
+            yield Problem((name,), wrong, f"them as one, e.g. [{a:g}, {max(b, d):g}]")
+
+
+def _within_days(spans: tuple[tuple[float, float], ...]) -> list[tuple[float, float]]:
+    """The same spans, those across midnight cut there; a span without length is taken as the whole day."""
+    cut: list[tuple[float, float]] = []
+    for start, end in spans:
+        if start == end:
+            cut += [(0.0, 24.0)]
+        elif start < end:
+            cut += [(start, end)]
+        else:
+            cut += [(a, b) for a, b in ((start, 24.0), (0.0, end)) if a < b]
+    return cut
+
+
+def _pairs(pairs: list[tuple[float, float]]) -> str:
+    return "[" + ", ".join(f"[{a:g}, {b:g}]" for a, b in pairs) + "]"
+
+
+def robot(robot: Robot) -> Iterator[Problem]:
+    """Names are unique, loads have rails, rails fit the battery, panels fit the controller."""
+    for kind, parts in (("panel", robot.panels), ("rail", robot.rails), ("load", robot.loads)):
+        yield from _unique(kind, [part.name for part in parts])
+    yield from _load_rails(robot)
+    for number, rail in enumerate(robot.rails):
+        yield from _rail_voltage(rail, number, robot.battery)
+    yield from _panels_on_controller(robot)
+
+
+def _unique(kind: str, names: list[str]) -> Iterator[Problem]:
+    for number, name in enumerate(names):
+        first = names.index(name)
+        if first < number:
+            wrong = f'"{name}" is the name of {kind} {first + 1} already'
+            free = next(f"{name} {n}" for n in range(2, len(names) + 2) if f"{name} {n}" not in names)
+            yield Problem(
+                (kind, number, "name"), wrong, f'another name, e.g. name = "{free}"', ((kind, first, "name"),)
+            )
+
+
+def _load_rails(robot: Robot) -> Iterator[Problem]:
+    names = [rail.name for rail in robot.rails]
+    judged: tuple[Path, ...] = (("rail",),) if not names else tuple(("rail", n, "name") for n in range(len(names)))
+    for number, load in enumerate(robot.loads):
+        if load.rail not in names:
+            near = difflib.get_close_matches(load.rail, names, n=1, cutoff=0.5)
+            choices = " or ".join(f'"{name}"' for name in near + [name for name in names if name not in near])
+            remedy = f"rail = {choices}" if names else f'a [[rail]] with name = "{load.rail}" and its kind'
+            yield Problem(("load", number, "rail"), f'"{load.rail}" is no rail of this file', remedy, judged)
+
+
+def _rail_voltage(rail: Rail, number: int, battery: Battery) -> Iterator[Problem]:
+    """A regulator can hold its voltage over the whole working range of the battery at rest."""
+    if rail.volts is None:
+        return
+    of_rail: tuple[Path, ...] = tuple(("rail", number, name) for name in ("kind", "dropout_v", "diode_drop_v"))
+    judged = of_rail + tuple(("battery", name) for name in ("chemistry", "cells_in_series", "cutoff_soc"))
+    reach_v = battery.lowest_v - rail.diode_drop_v - rail.dropout_v
+    floor_v = battery.highest_v - rail.diode_drop_v
+    pack = f"the battery ({battery.in_words})"
+    diode = f" less {rail.diode_drop_v:g} V of diode" if rail.diode_drop_v else ""
+    if rail.kind in ("step-down", "linear") and rail.volts > reach_v + TOUCH_V:
+        wrong = (
+            f'{rail.volts:g} is out of reach of kind "{rail.kind}": {pack} sinks to {battery.lowest_v:.2f} V at'
+            f" cutoff_soc = {battery.cutoff_soc:g}{diode} less {rail.dropout_v:g} V dropout, which leaves {reach_v:.2f}"
+        )
+        yield Problem(
+            ("rail", number, "volts"), wrong, f'kind = "step-up", volts below {reach_v:.2f}, or more cells', judged
+        )
+    if rail.kind == "step-up" and rail.volts < floor_v - TOUCH_V:
+        wrong = (
+            f'{rail.volts:g} is out of reach of kind "step-up": {pack} has {battery.highest_v:.2f} V when full{diode}'
+        )
+        yield Problem(("rail", number, "volts"), wrong, f'kind = "step-down", or volts above {floor_v:.2f}', judged)
+
+
+def _panels_on_controller(robot: Robot) -> Iterator[Problem]:
+    kind, shared = robot.controller.kind, robot.controller.trackers == "shared"
+    strings = [(n, p.vmp_v * p.in_series) for n, p in enumerate(robot.panels) if p.vmp_v is not None]
+    for number, panel in enumerate(robot.panels):
+        if panel.vmp_v is None and kind != "mppt":
+            wrong = f'is missing; a "{kind}" controller holds the panel at the battery, so its voltage decides'
+            remedy = "vmp_v from the data sheet, e.g. vmp_v = 18.0"
+            yield Problem(("panel", number, "vmp_v"), wrong, remedy, (("controller", "kind"),))
+    if not shared or not strings:
+        return
+    (first, first_v), *others = strings
+    for number, string_v in others:
+        if max(first_v, string_v) / min(first_v, string_v) - 1 > STRING_MISMATCH:
+            names = robot.panels[number].name, robot.panels[first].name
+            yield Problem(
+                ("panel", number, "in_series"),
+                f'strings of "{names[0]}" at {string_v:g} V and of "{names[1]}" at {first_v:g} V share one tracker',
+                'trackers = "per-panel" in [controller], or in_series so that their voltages agree within 10 %',
+                judged=(("panel", number, "vmp_v"), ("panel", first, "vmp_v"), ("controller", "trackers")),
+            )
