@@ -1,1 +1,8 @@
 """Duty cycle and rails: loads in, `Demand` at the battery out."""
+
+from .audit import rail_cautions
+from .carriers import Asked, Demand
+from .loads import demand
+from .traction import traction_w
+
+__all__ = ["Asked", "Demand", "demand", "rail_cautions", "traction_w"]
