@@ -17,7 +17,8 @@ if TYPE_CHECKING:
     from .site import Climate, Site, WeatherSource
     from .window import Window
 
-MONTHS = "January February March April May June July August September October November December".split()
+MONTHS = ["January", "February", "March", "April", "May", "June"]
+MONTHS += ["July", "August", "September", "October", "November", "December"]
 DAYS_IN_MONTH = (31, 29, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31)
 SHEET_MISMATCH = 0.05
 """How far watts may differ from vmp_v x imp_a; common practice: data sheets round."""
@@ -40,8 +41,8 @@ def site(site: Site) -> Iterator[Problem]:
         if abs((clock_h - site.longitude / 15 + 12) % 24 - 12) > CLOCK_FROM_SUN_H:
             yield Problem(
                 ("longitude",),
-                f"{site.longitude:g} is half a world away from the clock of {site.time_zone} (UTC{clock_h:+g} h)",
-                f"degrees east as positive and west as negative, near {15 * clock_h:g}; or the zone of the place",
+                f"{site.longitude:g} does not fit the clock of {site.time_zone}, which belongs near {15 * clock_h:g}",
+                "degrees east as positive and degrees west as negative, or the zone of the place",
                 judged=(("time_zone",),),
             )
     azimuths = [azimuth for azimuth, _ in site.horizon]
@@ -65,7 +66,7 @@ def _zone_remedy(name: str) -> str:
     wanted = name.strip().lower().replace(" ", "_")
     city = [zone for zone in known if wanted and wanted in {zone.lower(), zone.lower().rsplit("/", 1)[-1]}]
     by_lower = {zone.lower(): zone for zone in known}
-    near = city or [by_lower[match] for match in difflib.get_close_matches(wanted, by_lower, n=3, cutoff=0.6)]
+    near = city or [by_lower[match] for match in difflib.get_close_matches(wanted, by_lower, n=2, cutoff=0.75)]
     names = " or ".join(f'"{zone}"' for zone in near[:3]) or 'a name such as "Europe/Zurich" or "UTC"'
     return f"the IANA name of the place's clock: {names}"
 
@@ -185,12 +186,11 @@ def controller(controller: Controller) -> Iterator[Problem]:
 def battery(battery: Battery) -> Iterator[Problem]:
     """Thresholds and temperature window in order."""
     if battery.cutoff_soc >= battery.restart_soc:
-        given = battery.model_fields_set
         yield Problem(
             ("restart_soc",),
             f"{battery.restart_soc:g} is not above cutoff_soc = {battery.cutoff_soc:g}",
             f"a restart_soc above {battery.cutoff_soc:g}, or both left out for the usual shares of {battery.chemistry}",
-            judged=tuple((name,) for name in ("cutoff_soc", "chemistry") if name in given),
+            judged=(("cutoff_soc",),),
         )
     low, high = battery.charge_min_c, battery.charge_max_c
     if low is not None and high is not None and low >= high:
@@ -211,7 +211,12 @@ def load(load: Load) -> Iterator[Problem]:
     """One way to say the power, hours that run forward, lists without gaps or doubles."""
     given = [name for name in ("watts", "amps", "traction") if getattr(load, name) is not None]
     if not given:
-        yield Problem(("watts",), "is missing, and so are amps and traction", "one of the three, e.g. watts = 4.0")
+        yield Problem(
+            ("watts",),
+            "is missing, and so are amps and traction",
+            "one of the three, e.g. watts = 4.0",
+            (("amps",), ("traction",)),
+        )
     if len(given) > 1:
         wrong = f"stands beside {given[0]}, and both say what it draws"
         yield Problem((given[1],), wrong, f"only one of {' and '.join(given)}", tuple((name,) for name in given))

@@ -282,7 +282,9 @@ class Load(Part):
     hours: Spans | None = key(None, "[from, to] spans of the clock; default always", example=[[9, 11.5], [14, 16]])
     clock: Literal["local", "solar"] = key("local", "which clock hours means: local or solar")
     on_fraction: Share = key(1.0, "share of the time within those hours", example=0.6)
-    months: tuple[Month, ...] = key(tuple(range(1, 13)), "months in which it works", example=[3, 4, 5, 6, 7, 8, 9, 10])
+    months: tuple[Month, ...] = key(
+        tuple(range(1, 13)), "months in which it works, 1 to 12", example=[3, 4, 5, 6, 7, 8, 9, 10]
+    )
     weekdays: tuple[Weekday, ...] = key(
         ("mon", "tue", "wed", "thu", "fri", "sat", "sun"),
         "days on which it works",
