@@ -1,0 +1,157 @@
+"""The light room's assembler: the light on every panel of a robot, step by step and heading by heading."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from ..calendar import standard_clock
+from ..errors import Fault, InputError
+from ..inputs.robot import Panel, Robot
+from ..inputs.site import Site
+from ..sky.weather import Weather
+from ..types import FloatArray, IntArray
+from .carriers import Light, LightYield, Sun
+from .glass import dirt_pass, snow_pass
+from .headings import N_HEADINGS, heading_matters, heading_weight, noses
+from .plane import SkyParts, sky_parts
+from .view import Factors, Run, View, light_through, open_air, runs_of, under_horizon
+
+_ALL_ALIKE: FloatArray = np.ones((1, 1))
+
+
+@dataclass(frozen=True, eq=False)
+class _Outside:
+    """What all panels share: the open sky, the sky over the ground as the horizon leaves it, runs of steps, months."""
+
+    open: SkyParts
+    left: SkyParts
+    runs: list[Run]
+    month: IntArray
+
+
+def lights_on(robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1) -> tuple[Light, ...]:
+    """The light on each panel of ``robot``, in its order.
+
+    Parameters
+    ----------
+    robot : Robot
+        With its site: albedo, horizon and slope are taken from there; clocks and sun from the weather's place.
+    weather, sun : Weather, Sun
+        ``sun`` as ``sun_over(weather)`` gives it.
+    seed : int
+        Draws the headings of a roaming robot that stands anywhere when parked.
+
+    Raises
+    ------
+    InputError
+        The robot lives behind a window, which is not built yet.
+    """
+    outside = _outside(robot.site, weather, sun)
+    nose_deg = noses(robot, sun)
+    views = [_view(panel, robot, sun=sun, nose_deg=nose_deg) for panel in robot.panels]
+    kept = [_kept(panel, weather, outside.month) for panel in robot.panels]
+    planes = [_filled(outside.left, view.plane, outside.runs) for view in views]
+    cells = [
+        _filled(outside.left, view.glass, outside.runs, times=dirt * snow)
+        for view, (dirt, snow) in zip(views, kept, strict=True)
+    ]
+    weights = _weights(robot, weather, cells, runs=outside.runs, seed=seed)
+    return tuple(
+        Light(plane, cell, weight, _yearly(weather, outside, view=view, weight=weight, kept=keep))
+        for plane, cell, weight, view, keep in zip(planes, cells, weights, views, kept, strict=True)
+    )
+
+
+def parked_otherwise(lights: tuple[Light, ...], robot: Robot, weather: Weather, *, seed: int = 1) -> tuple[Light, ...]:
+    """The same lights with the weights of another ``robot.parked``; ``yearly`` stays that of the lights given.
+
+    For a robot that differs in nothing else: the light by heading does not depend on where it stands when parked.
+    """
+    cells = [light.cells_w_m2 for light in lights]
+    weights = _weights(robot, weather, cells, runs=runs_of(weather.row), seed=seed)
+    return tuple(replace(light, weight=weight) for light, weight in zip(lights, weights, strict=True))
+
+
+def _outside(site: Site, weather: Weather, sun: Sun) -> _Outside:
+    """The sky over the site, worked out once for all panels and headings."""
+    month = standard_clock(weather.ref_times, weather.place.time_zone).month
+    row = weather.row
+    ghi, dni, dhi = (weather.table[column].to_numpy(dtype=np.float64) for column in ("ghi", "dni", "dhi"))
+    sky = sky_parts(
+        ghi,
+        dni,
+        dhi=dhi,
+        sun=Sun(**{name: values[row] for name, values in vars(sun).items()}),
+        albedo=np.asarray(site.albedo)[month - 1][row],
+    )
+    return _Outside(sky, under_horizon(sky, site, sun=sun, row=row), runs_of(row), month)
+
+
+def _view(panel: Panel, robot: Robot, *, sun: Sun, nose_deg: FloatArray) -> View:
+    """How the panel sees the sky."""
+    if getattr(robot, "window", None) is not None:
+        raise InputError(Fault("robot file: window", "light behind glass is not there yet", "no [window] for now"))
+    nose_deg = nose_deg if heading_matters(panel) else np.zeros((1, 1))
+    return open_air(panel, robot.site, sun=sun, nose_deg=nose_deg)
+
+
+def _kept(panel: Panel, weather: Weather, month: IntArray) -> tuple[FloatArray, FloatArray | float]:
+    """Shares of light that pass dirt, and snow."""
+    return dirt_pass(panel.dirt_loss, month)[weather.row], snow_pass(panel.tilt_deg, weather.snow_covered)
+
+
+def _filled(sky: SkyParts, factors: Factors, runs: list[Run], *, times: FloatArray | None = None) -> FloatArray:
+    """Light through the factors, (n_times, n_headings), times a share of each step."""
+    n_headings = max(part.shape[1] for part in vars(factors).values())
+    light = np.empty((len(sky.direct), n_headings))
+    for run, block in light_through(sky, factors, runs):
+        if times is None:
+            light[run.times] = block
+        else:
+            np.multiply(block, times[run.times, None], out=light[run.times])
+    return light
+
+
+def _weights(
+    robot: Robot, weather: Weather, cells: list[FloatArray], *, runs: list[Run], seed: int
+) -> list[FloatArray]:
+    """Heading weights of each panel; one array for all for which heading matters."""
+    roaming = [light.shape[1] == N_HEADINGS for light in cells]
+    if not any(roaming):
+        return [_ALL_ALIKE] * len(cells)
+    watts = [panel.total_watts for panel in robot.panels]
+    # scaling is only needed to compare several panels: one alone is used as it stands
+    scaled = [light if sum(roaming) == 1 else light * w for light, w, r in zip(cells, watts, roaming, strict=True) if r]
+    weight = heading_weight(robot, weather, cells_w_m2=scaled, runs=runs, seed=seed)
+    return [weight if roams else _ALL_ALIKE for roams in roaming]
+
+
+def _yearly(
+    weather: Weather,
+    outside: _Outside,
+    *,
+    view: View,
+    weight: FloatArray,
+    kept: tuple[FloatArray, FloatArray | float],
+) -> LightYield:
+    """Irradiation after each step, mean over years and headings."""
+    dirt, snow = kept
+    per_year = weather.step_h / max(weather.n_years, 1)
+    angle = _mean(outside.open, view.open, weight=weight, runs=outside.runs)
+    untouched = view.plane is view.open and outside.left is outside.open
+    plane = angle if untouched else _mean(outside.left, view.plane, weight=weight, runs=outside.runs)
+    glass = _mean(outside.left, view.glass, weight=weight, runs=outside.runs)
+    dirty = glass * dirt
+    stages = (weather.table["ghi"].to_numpy(), angle, plane, glass, dirty, dirty * snow)
+    return LightYield(*(float(light.sum()) * per_year for light in stages))
+
+
+def _mean(sky: SkyParts, factors: Factors, *, weight: FloatArray, runs: list[Run]) -> FloatArray:
+    """Light through the factors, mean over headings; (n_times,)."""
+    light = np.empty(len(sky.direct))
+    for run, block in light_through(sky, factors, runs):
+        share = weight if len(weight) == 1 else weight[run.times]
+        light[run.times] = block @ share[0] if len(share) == 1 else np.einsum("ij,ij->i", block, share)
+    return light
