@@ -48,7 +48,7 @@ def _tidy(node: Any) -> Any:
     options = [option for option in node.pop("anyOf", []) if option != {"type": "null"}]
     node |= options[0] if len(options) == 1 else {"anyOf": options} if options else {}
     unit, mark, example = node.pop("unit", ""), node.pop("mark", ""), node.pop("example", None)
-    if node.get("default", ...) is None:
+    if node.get("default", ...) is None or isinstance(node.get("default"), dict):
         del node["default"]
     if unit:
         node["description"] = f"{node['description']} [{unit}]"
