@@ -2,10 +2,8 @@
 
 from __future__ import annotations
 
-import contextlib
 import difflib
 import os
-import tempfile
 import textwrap
 from collections.abc import Iterator, Mapping
 from importlib import resources
@@ -21,6 +19,7 @@ from ..inputs.fields import Part
 from ..inputs.robot import Robot
 from ..inputs.site import Climate, Site
 from ..types import Place
+from ..writing import write_whole
 
 SITE, ROBOT = "site.toml", "robot.toml"
 COMMENT_COLUMN = 34
@@ -111,36 +110,21 @@ def write_files(folder: str | Path, files: Mapping[str, str | bytes]) -> list[Pa
     taken = [name for name in dict.fromkeys([SITE, ROBOT, *files]) if os.path.lexists(folder / name)]
     if taken:
         raise InputError(Fault(str(folder), f"holds {' and '.join(taken)} already", "a folder without, or a new one"))
-    complete: list[tuple[str, Path]] = []
+    written: list[Path] = []
     try:
         folder.mkdir(parents=True, exist_ok=True)
         for name, text in files.items():
-            complete.append((_beside(folder, text), folder / name))
-        for temporary, path in complete:
-            os.replace(temporary, path)
-    except OSError as error:
+            content = text.encode() if isinstance(text, str) else text
+            write_whole(folder / name, lambda temporary, content=content: temporary.write_bytes(content))  # type: ignore[misc]
+            written.append(folder / name)
+    except (OSError, InputError) as error:
+        for path in written:
+            path.unlink()
+        if isinstance(error, InputError):
+            raise
         reason = (error.strerror or str(error)).lower()
-        raise InputError(Fault(str(folder), f"cannot be written to ({reason})", "a folder you may write to")) from None
-    finally:
-        for temporary, _ in complete:
-            with contextlib.suppress(FileNotFoundError):
-                os.unlink(temporary)
-    return [path for _, path in complete]
-
-
-def _beside(folder: Path, text: str | bytes) -> str:
-    """A temporary file in the folder with this text, readable as any new file would be."""
-    handle, name = tempfile.mkstemp(prefix=".sunbot-", dir=folder)
-    umask = os.umask(0)
-    os.umask(umask)
-    try:
-        with os.fdopen(handle, "wb") as file:
-            file.write(text.encode() if isinstance(text, str) else text)
-        os.chmod(name, 0o666 & ~umask)
-    except OSError:
-        os.unlink(name)
-        raise
-    return name
+        raise InputError(Fault(str(folder), f"cannot be made ({reason})", "a folder you may write to")) from None
+    return written
 
 
 def starter_files(
@@ -178,7 +162,7 @@ def starter_files(
     return {SITE: "\n".join(site) + "\n", ROBOT: "\n".join(robot) + "\n"}
 
 
-_HOW_TO_READ = "A key that is commented out shows its default, or an example where it has none; remove the # in front of it to set it."
+_HOW_TO_READ = "A key behind a # shows its default, or an example where it has none; remove the # to set it."
 
 
 def _sentences(text: str) -> list[str]:

@@ -105,8 +105,15 @@ def test_other_files_of_the_folder_stay(tmp_path):
     assert (tmp_path / "README.md").read_text(encoding="utf-8") == "mine"
 
 
+def test_of_two_files_both_or_none_are_written(tmp_path):
+    """Where the second file cannot be written, the first is taken back."""
+    with pytest.raises(InputError, match=r"gone.* there is no folder"):
+        starter.write_files(tmp_path, {"site.toml": "a", "gone/robot.toml": "b"})
+    assert list(tmp_path.iterdir()) == []
+
+
 def test_what_cannot_be_written_is_said(tmp_path):
     """A folder below a file is refused as the user's mistake."""
     (tmp_path / "file").write_text("", encoding="utf-8")
-    with pytest.raises(InputError, match="cannot be written to"):
+    with pytest.raises(InputError, match="cannot be made"):
         starter.write_files(tmp_path / "file" / "new", {"site.toml": ""})
