@@ -47,6 +47,8 @@ def _tidy(node: Any) -> Any:
     node = {name: _tidy(value) for name, value in node.items() if not (name == "title" and isinstance(value, str))}
     options = [option for option in node.pop("anyOf", []) if option != {"type": "null"}]
     node |= options[0] if len(options) == 1 else {"anyOf": options} if options else {}
+    for only in node.pop("allOf", []):  # older pydantic wraps a lone reference
+        node |= only
     unit, mark, example = node.pop("unit", ""), node.pop("mark", ""), node.pop("example", None)
     if node.get("default", ...) is None or isinstance(node.get("default"), dict):
         del node["default"]
