@@ -1,0 +1,149 @@
+"""The user's own CSV: stamps with an offset (or a named clock), light and whatever else was measured."""
+
+from __future__ import annotations
+
+import difflib
+import re
+import warnings
+from datetime import timedelta, timezone, tzinfo
+from pathlib import Path
+from typing import Any, Literal
+from zoneinfo import ZoneInfo
+
+import numpy as np
+import pandas as pd
+
+from ..errors import Fault, InputError
+from ..types import FloatArray, IntArray
+from .readings import COLUMNS, Reading, numbers_of, on_grid, step_of, without_codes
+
+Label = Literal["start", "middle", "end"]
+_MIDDLE = {"start": 0.5, "middle": 0.0, "end": -0.5}
+_OFFSET = re.compile(r"^([+-])(\d\d):(\d\d)$")
+_ZONED = r"(?:[Zz]|[+-]\d\d(?::?\d\d)?)$"
+_CLOCKS = 'stamps_in = "UTC", an offset such as "+01:00", or a zone such as "Europe/Zurich"'
+
+
+def read_own_csv(path: Path, *, name: str, label: Label | None, stamps_in: str | None, shift_s: int) -> Reading:
+    """Rows of a CSV with columns time, ghi and any of dni, dhi, temp_air, wind_speed, as a record.
+
+    Raises
+    ------
+    InputError
+        No ``label``; no column time or ghi; cells that are no numbers; stamps without an offset and no ``stamps_in``;
+        stamps out of order, twice, or off a constant step.
+    """
+    if label is None:
+        choice = 'label = "start", "middle" or "end": which instant of its interval a time stamp names'
+        raise InputError(Fault("site.toml: weather: label", f"it is missing, and {name} needs it", choice))
+    raw = _table(path, name=name)
+    stamps = _utc_seconds(raw["time"], name=name, stamps_in=stamps_in)
+    seconds = stamps + round(_MIDDLE[label] * step_of(stamps, name=name)) + shift_s
+    values = numbers_of(raw.drop(columns="time"), name=name, first_line=2)
+    values, coded = without_codes(values)
+    table, step = on_grid(seconds, values, name=name)
+    return Reading(table, step / 3600, "record", None, name, coded)
+
+
+def _table(path: Path, *, name: str) -> pd.DataFrame:
+    """The columns we know, the stamps as text."""
+    try:
+        with path.open(encoding="utf-8-sig") as file:
+            titles = [title.strip().strip('"') for title in file.readline().rstrip("\r\n").split(",")]
+        _check_titles(titles, name=name)
+        options: dict[str, Any] = {"header": 0, "names": titles, "index_col": False, "skipinitialspace": True}
+        with warnings.catch_warnings():
+            warnings.simplefilter("error", pd.errors.ParserWarning)  # a first row with more cells than titles
+            raw = pd.read_csv(path, encoding="utf-8-sig", dtype={"time": str}, **options)
+    except UnicodeDecodeError:
+        raise InputError(Fault(name, "it is not UTF-8 text", "the table saved as CSV in UTF-8")) from None
+    except (pd.errors.ParserError, pd.errors.ParserWarning) as error:
+        raise InputError(
+            Fault(name, f"its rows cannot be read ({error})", "as many cells in each row as titles")
+        ) from None
+    if len(raw) < 2:
+        raise InputError(Fault(name, "it holds fewer than two rows", "a weather file of at least one whole year"))
+    return pd.DataFrame(raw[["time", *(title for title in COLUMNS if title in titles)]])
+
+
+def _check_titles(titles: list[str], *, name: str) -> None:
+    where = f"{name}: line 1"
+    if len(titles) == 1 and ";" in titles[0]:
+        wrong = "its cells are separated by semicolons"
+        raise InputError(Fault(where, wrong, "cells separated by commas, and numbers with a decimal point"))
+    twice = sorted({title for title in titles if title in ("time", *COLUMNS) and titles.count(title) > 1})
+    faults = [Fault(where, f"{title} stands twice", "each column once") for title in twice]
+    for title in ("time", "ghi"):
+        if title not in titles:
+            near = difflib.get_close_matches(title, [t.lower() for t in titles], n=1, cutoff=0.5)
+            found = next((t for t in titles if near and t.lower() == near[0]), None)
+            wrong = f"no column {title}" + (f" (there is {found!r})" if found else "")
+            faults.append(
+                Fault(where, wrong, f"a title line such as time,{','.join(COLUMNS)} (time and ghi are required)")
+            )
+    if faults:
+        raise InputError(faults)
+
+
+def _utc_seconds(stamps: pd.Series, *, name: str, stamps_in: str | None) -> IntArray:
+    """Stamps as seconds since 1970 UTC."""
+    where = f"{name}: time"
+    if stamps.isna().any():
+        line = int(np.argmax(stamps.isna().to_numpy())) + 2
+        raise InputError(Fault(f"{where}: line {line}", "it is empty", "a time stamp in each row"))
+    try:
+        times = pd.to_datetime(stamps, format="ISO8601")
+    except (ValueError, pd.errors.OutOfBoundsDatetime):
+        times = _mixed_offsets(stamps, where=where)
+    index = pd.DatetimeIndex(times)
+    if index.tz is not None and stamps_in is not None:
+        wrong = f"it is given, but the stamps of {name} carry an offset"
+        raise InputError(Fault("site.toml: weather: stamps_in", wrong, "the file without stamps_in"))
+    if index.tz is None:
+        if stamps_in is None:
+            wrong = f"{stamps.iloc[0]} carries no offset from UTC, and the site file names no clock for it"
+            raise InputError(Fault(f"{where}: line 2", wrong, f"{_CLOCKS} under [weather], or stamps with an offset"))
+        index = _localized(index, clock_of(stamps_in), where=where, stamps_in=stamps_in)
+    return np.asarray(index.tz_convert("UTC").round("s").as_unit("s").asi8, dtype=np.int64)
+
+
+def _mixed_offsets(stamps: pd.Series, *, where: str) -> pd.Series:
+    """Stamps whose offsets differ (daylight saving) as UTC; the line of the first that cannot be read otherwise."""
+    times = pd.to_datetime(stamps, format="ISO8601", utc=True, errors="coerce")
+    bad = times.isna().to_numpy()
+    shape = "ISO 8601, e.g. 2021-03-01T12:00:00+01:00"
+    if bad.any():
+        row = int(np.argmax(bad))
+        raise InputError(Fault(f"{where}: line {row + 2}", f"{stamps.iloc[row]!r} is no time stamp", shape))
+    naive = ~stamps.str.contains(_ZONED, regex=True).to_numpy(dtype=bool)
+    if naive.any():
+        row = int(np.argmax(naive))
+        wrong = f"{stamps.iloc[row]} carries no offset, others do"
+        raise InputError(Fault(f"{where}: line {row + 2}", wrong, "all stamps with an offset, or none"))
+    return times
+
+
+def clock_of(stamps_in: str) -> tzinfo:
+    """The clock that ``stamps_in`` names: UTC, an offset or a zone."""
+    offset = _OFFSET.match(stamps_in)
+    if offset:
+        minutes = int(offset[2]) * 60 + int(offset[3])
+        return timezone(timedelta(minutes=-minutes if offset[1] == "-" else minutes))
+    return ZoneInfo(stamps_in)
+
+
+def _localized(index: pd.DatetimeIndex, clock: tzinfo, *, where: str, stamps_in: str) -> pd.DatetimeIndex:
+    try:
+        return index.tz_localize(clock, ambiguous="infer")
+    except ValueError as error:
+        wrong = f"on the clock of {stamps_in} its stamps do not run through ({str(error).splitlines()[0]})"
+        standard = 'the offset the logger really kept, e.g. stamps_in = "+01:00" for a clock without daylight saving'
+        raise InputError(Fault(where, wrong, standard)) from None
+
+
+def own_csv_text(table: pd.DataFrame) -> str:
+    """A table of middles as own CSV; read back with label "middle" it gives the same numbers."""
+    stamps = pd.DatetimeIndex(table.index).strftime("%Y-%m-%dT%H:%M:%SZ")
+    columns: list[FloatArray] = [table[column].to_numpy() for column in table]
+    body = pd.DataFrame({"time": stamps, **dict(zip(table.columns, columns, strict=True))})
+    return str(body.to_csv(index=False, lineterminator="\n"))
