@@ -17,10 +17,13 @@ def resistance_ohm(length_m: float, area_mm2: float, *, temp_c: float = 20.0) ->
 
     Parameters
     ----------
-    length_m : one way [m], at least 0.
-    area_mm2 : copper cross-section [mm²], above 0. At the sizes of the flexible-cable table its values hold,
+    length_m : float
+        One way [m], at least 0.
+    area_mm2 : float
+        Copper cross-section [mm²], above 0. At the sizes of the flexible-cable table its values hold,
         at others (gauge sizes) those of solid copper.
-    temp_c : of the copper [°C].
+    temp_c : float
+        Temperature of the copper [°C].
 
     Raises
     ------

@@ -1,1 +1,7 @@
 """Cells and controller: W/m2 and degC in, W at the battery (`Supply`) out."""
+
+from .carriers import HarvestYield, Supply
+from .cautions import supply_cautions
+from .supplying import follows_battery, harvest_yield, supply
+
+__all__ = ["HarvestYield", "Supply", "follows_battery", "harvest_yield", "supply", "supply_cautions"]

@@ -1,0 +1,268 @@
+"""The assembler of the room: light on the panels in, `Supply` at the battery and `HarvestYield` out."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Sequence
+from concurrent.futures import ThreadPoolExecutor
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from ..inputs.robot import Controller, Robot
+from ..light.carriers import Light
+from ..sky.weather import Weather
+from ..types import FloatArray, IntArray
+from .carriers import HarvestYield, Supply
+from .cells import STC_W_M2
+from .controller import converted_w, shared_peak, tracked_current_a
+from .panels import Array, above_battery_v, arrays_of, battery_v
+from .samples import Samples, all_samples, samples, stretches
+from .tables import Spots, current_table, look_up, spots
+
+_THREADS = min(4, os.cpu_count() or 1)
+_HOTTEST_CELL_C = 75.0
+
+
+def supply(
+    lights: Sequence[Light],
+    weather: Weather,
+    robot: Robot,
+    *,
+    watts: FloatArray,
+    battery_v: FloatArray,
+    accounts: bool = True,
+) -> Supply:
+    """What the panels offer at the battery, for several panel sizes and battery voltages.
+
+    Parameters
+    ----------
+    lights : one per panel of the robot
+        Light on each; the mean over the headings is taken of the harvest, with their weights.
+    weather : Weather
+        Air temperature and wind, step by step.
+    robot : Robot
+        Panels, wires and controller as filed.
+    watts : (n_watts,)
+        Total name-plate powers [W], at least 0; every panel is scaled alike, its wire stays as it is.
+    battery_v : (n_volts,)
+        Rest voltages of the pack [V], ascending.
+    accounts : bool
+        False leaves out panel_w and wire_w.
+
+    Raises
+    ------
+    InputError
+        A data sheet no cell can have, a panel voltage that cannot reach the battery.
+    ValueError
+        Lights that do not belong to these panels, or are not finite.
+
+    Source
+    ------
+    Published: Faiman 2008 (cell temperature); De Soto, Klein & Beckman 2006 (current and voltage). Converter: the
+    user's figures.
+    """
+    arrays = arrays_of(robot)
+    _must_fit(lights, weather, arrays)
+    sizes, volts = np.atleast_1d(np.asarray(watts, dtype=float)), np.atleast_1d(np.asarray(battery_v, dtype=float))
+    if not (sizes >= 0.0).all() or not (volts > 0.0).all():
+        raise ValueError("watts at least 0 and battery_v above 0 are needed")
+    plant = _Plant(arrays, robot.controller, scales=tuple(sizes / robot.watts), volts=tuple(volts))
+    shape = (len(weather.table), len(sizes), len(volts))
+    made = [np.zeros(shape) for _ in range(3 if accounts else 1)]
+
+    def work(within: slice) -> None:
+        lit = samples(lights, weather, arrays, within=within)
+        if lit is not None:
+            for whole, part in zip(made, plant.run(lit), strict=False):
+                whole[lit.rows] = part
+
+    with ThreadPoolExecutor(_THREADS) as pool:
+        list(pool.map(work, stretches(lights, len(weather.table))))
+    return Supply(
+        battery_v=volts,
+        watts=sizes,
+        offer_w=made[0],
+        panel_w=made[1] if accounts else None,
+        wire_w=made[2] if accounts else None,
+        own_use_w=robot.controller.own_use_w,
+    )
+
+
+def follows_battery(robot: Robot) -> bool:
+    """Whether the harvest depends on the battery's voltage, so that one node would not do.
+
+    Not so for a tracker without a current limit whose hot panels clear the full battery.
+    """
+    controller = robot.controller
+    if controller.kind != "mppt" or controller.max_charge_a is not None:
+        return True
+    needed_v = battery_v(robot, 1.0) + above_battery_v(robot)
+    for array in arrays_of(robot):
+        hot_v = array.vmp_v + array.voc_v * array.panel.voc_pct_per_k / 100.0 * (_HOTTEST_CELL_C - 25.0)
+        if hot_v - array.watts / array.vmp_v * array.wire_ohm < needed_v:
+            return True
+    return False
+
+
+def harvest_yield(lights: Sequence[Light], weather: Weather, robot: Robot, supply: Supply) -> HarvestYield:
+    """What the cells give in a year after each step, for the robot as filed.
+
+    Parameters
+    ----------
+    lights : one per panel
+        As in `supply`.
+    weather : Weather
+        As in `supply`.
+    robot : Robot
+        As filed.
+    supply : Supply
+        With accounts, and the robot's own watts among its watts; its middle voltage counts.
+
+    Raises
+    ------
+    ValueError
+        A supply without accounts or without the robot's own watts.
+    """
+    at = np.flatnonzero(np.isclose(supply.watts, robot.watts, rtol=1e-9))
+    if supply.panel_w is None or not len(at):
+        raise ValueError("harvest_yield needs a supply with accounts for the robot's own watts")
+    arrays = arrays_of(robot)
+    _must_fit(lights, weather, arrays)
+    nominal = heat = low_light = 0.0
+    for lit in all_samples(lights, weather, arrays):
+        for array, light, temp_c, spot in zip(arrays, lit.cells_w_m2, lit.temp_c, lit.at, strict=True):
+            suns = light / STC_W_M2 * lit.weight
+            nominal += array.watts * float(suns.sum())
+            bright = spots(np.full_like(light, STC_W_M2), temp_c)
+            heat += float((suns * look_up(array.peak_table, bright)[0]).sum())
+            low_light += float((suns * look_up(array.peak_table, spot)[0]).sum())
+    panel_w = supply.panel_w[:, at[0], len(supply.battery_v) // 2]
+    per_year = weather.step_h / weather.n_years
+    return HarvestYield(
+        nominal=nominal * per_year,
+        heat=heat * per_year,
+        low_light=low_light * per_year,
+        off_peak=float(panel_w.sum()) * per_year,
+    )
+
+
+def _must_fit(lights: Sequence[Light], weather: Weather, arrays: Sequence[Array]) -> None:
+    """One finite light per panel, as long as the weather."""
+    if len(lights) != len(arrays):
+        raise ValueError(f"{len(lights)} lights for {len(arrays)} panels")
+    for light in lights:
+        if len(light.cells_w_m2) != len(weather.table):
+            raise ValueError(f"light of {len(light.cells_w_m2)} steps under weather of {len(weather.table)}")
+        if not np.isfinite(light.cells_w_m2.sum()):
+            raise ValueError("light on the cells is not finite throughout")
+
+
+@dataclass(frozen=True, eq=False)
+class _Plant:
+    """Panels and controller at some sizes (as multiples of the file) and battery voltages."""
+
+    arrays: tuple[Array, ...]
+    controller: Controller
+    scales: tuple[float, ...]
+    volts: tuple[float, ...]
+    _tables: dict[tuple[int, float, float], FloatArray] = field(default_factory=dict)
+
+    def run(self, lit: Samples) -> tuple[FloatArray, ...]:
+        """Offered, panel and wire power, each (n_lit, n_watts, n_volts)."""
+        shape = (len(lit.rows), len(self.scales), len(self.volts))
+        made = tuple(np.empty(shape) for _ in range(3))
+        mppt = self.controller.kind == "mppt"
+        trackers = self._trackers(lit) if mppt else []
+        for i, scale in enumerate(self.scales):
+            for j, volts in enumerate(self.volts):
+                if mppt:
+                    panel_w, wire_w = self._tracked(lit, trackers, scale=scale, volts=volts)
+                    offer_w = self._converted(panel_w - wire_w)
+                else:
+                    panel_w, wire_w, offer_w = self._coupled(lit, scale=scale, volts=volts)
+                self._limit(offer_w, panel_w, wire_w, volts=volts)
+                for whole, part in zip(made, (offer_w, panel_w, wire_w), strict=True):
+                    whole[:, i, j] = lit.mean(part)
+        return made
+
+    def _trackers(self, lit: Samples) -> list[tuple[FloatArray, dict[int, FloatArray]]]:
+        """For each tracker the best voltage and, by number of the panel, the current there as filed."""
+        peak_v, peak_a = [], []
+        for array, light, spot in zip(self.arrays, lit.cells_w_m2, lit.at, strict=True):
+            at_full, volts = look_up(array.peak_table, spot)
+            peak_v.append(volts)
+            peak_a.append(at_full * light / (STC_W_M2 * volts))
+        if len(self.arrays) == 1 or self.controller.trackers == "per-panel":
+            return [(volts, {k: amps}) for k, (volts, amps) in enumerate(zip(peak_v, peak_a, strict=True))]
+        parameters = [
+            array.cell.at(light, temp_c)
+            for array, light, temp_c in zip(self.arrays, lit.cells_w_m2, lit.temp_c, strict=True)
+        ]
+        volts, amps = shared_peak(parameters, peak_a, peak_v)
+        return [(volts, dict(enumerate(amps)))]
+
+    def _tracked(
+        self, lit: Samples, trackers: list[tuple[FloatArray, dict[int, FloatArray]]], *, scale: float, volts: float
+    ) -> tuple[FloatArray, FloatArray]:
+        """Power at the panels' terminals and lost in their wires, each tracker at its best or lowest voltage."""
+        panel_w, wire_w = np.zeros(len(lit.weight)), np.zeros(len(lit.weight))
+        floor_v = float("-inf") if self.controller.step_up else volts + self.controller.headroom_v
+        for best_v, filed_a in trackers:
+            held = {
+                k: tracked_current_a(amps * scale, best_v, wire_ohm=self.arrays[k].wire_ohm)
+                for k, amps in filed_a.items()
+            }
+            reached_v = best_v - np.maximum.reduce([a * self.arrays[k].wire_ohm for k, a in held.items()])
+            low = np.flatnonzero(reached_v < floor_v)
+            for k, amps in held.items():
+                ohm, panel_v = self.arrays[k].wire_ohm, best_v
+                if len(low):
+                    # A converter that only lowers is fully on here: the panel is dragged down to the battery.
+                    amps[low] = self._current(k, lit.at[k], scale=scale, volts=floor_v, only=low)
+                    panel_v = best_v.copy()
+                    panel_v[low] = floor_v + amps[low] * ohm
+                panel_w += panel_v * amps
+                wire_w += amps**2 * ohm
+        return panel_w, wire_w
+
+    def _coupled(self, lit: Samples, *, scale: float, volts: float) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """Power at the panels' terminals, in their wires and at the battery, all panels at the battery's voltage."""
+        controller_v = volts + (self.controller.diode_drop_v if self.controller.kind == "direct" else 0.0)
+        panel_w, wire_w, sum_a = (np.zeros(len(lit.weight)) for _ in range(3))
+        for k, array in enumerate(self.arrays):
+            amps = self._current(k, lit.at[k], scale=scale, volts=controller_v)
+            lost_w = amps**2 * array.wire_ohm
+            panel_w += controller_v * amps + lost_w
+            wire_w += lost_w
+            sum_a += amps
+        return panel_w, wire_w, volts * sum_a
+
+    def _current(self, k: int, at: Spots, *, scale: float, volts: float, only: IntArray | None = None) -> FloatArray:
+        """Current of panel k held at a voltage behind its wire [A]; none flows back."""
+        array = self.arrays[k]
+        extra_ohm = array.wire_ohm * scale
+        key = (k, volts, extra_ohm)
+        if key not in self._tables:
+            self._tables[key] = current_table(array.cell, volts=volts, extra_ohm=extra_ohm)
+        if only is not None:
+            at = Spots(at.mesh[only], at.across_light[only], at.across_temp[only])
+        return scale * np.maximum(look_up(self._tables[key], at)[0], 0.0)
+
+    def _converted(self, feed_w: FloatArray) -> FloatArray:
+        """Power the tracker puts out."""
+        own = self.controller
+        return converted_w(feed_w, efficiency=own.efficiency, curve=own.efficiency_curve, rated_w=own.rated_w)
+
+    def _limit(self, offer_w: FloatArray, panel_w: FloatArray, wire_w: FloatArray, *, volts: float) -> None:
+        """Start-up and current limit, in place: below the one nothing flows, above the other panels are throttled."""
+        own = self.controller
+        if own.start_up_w > 0.0:
+            asleep = panel_w < own.start_up_w
+            offer_w[asleep] = 0.0
+            wire_w[asleep] = 0.0
+        if own.max_charge_a is not None:
+            over = np.flatnonzero(offer_w > own.max_charge_a * volts)
+            part = own.max_charge_a * volts / offer_w[over]
+            for power in (offer_w, panel_w, wire_w):
+                power[over] *= part
