@@ -91,7 +91,7 @@ def _outside(site: Site, weather: Weather, sun: Sun) -> _Outside:
 
 def _view(panel: Panel, robot: Robot, *, sun: Sun, nose_deg: FloatArray) -> View:
     """How the panel sees the sky."""
-    if getattr(robot, "window", None) is not None:
+    if robot.window is not None:
         raise InputError(Fault("robot file: window", "light behind glass is not there yet", "no [window] for now"))
     nose_deg = nose_deg if heading_matters(panel) else np.zeros((1, 1))
     return open_air(panel, robot.site, sun=sun, nose_deg=nose_deg)

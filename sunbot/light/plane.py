@@ -40,7 +40,7 @@ def sky_parts(
     sun: Sun,
     albedo: FloatArray,
 ) -> SkyParts:
-    """Split sky light by the continuous Perez model; a level plane gets dni cos(zenith) + dhi back.
+    """Split sky light by the continuous Perez model; a level plane gets all of it back.
 
     Parameters
     ----------
@@ -77,11 +77,11 @@ def sky_parts(
             sun.airmass[at],
             return_components=True,
         )
-        isotropic[at] = 2.0 * upright["poa_isotropic"]
+        circumsolar = (dhi[at] - 2.0 * upright["poa_isotropic"]) / np.maximum(height[at], _COS_85)
+        direct[at] += circumsolar
+        # what the model drops within 5 deg of the horizon is light too
+        isotropic[at] -= circumsolar * height[at]
         brightening[at] = upright["poa_horizon"]
-        direct[at] += (dhi[at] - isotropic[at]) / np.maximum(height[at], _COS_85)
-    # no plane gets less than nothing from the diffuse sky: upright is where that could happen
-    np.maximum(brightening, -0.5 * isotropic, out=brightening)
     return SkyParts(direct, isotropic, brightening, albedo * ghi)
 
 

@@ -51,11 +51,12 @@ def sun_over(weather: Weather) -> Sun:
     lit[edge] = share
     part = (share > 0.0) & (share < 1.0)
     zenith_deg[edge[part]], azimuth_deg[edge[part]] = up_zenith[part], up_azimuth[part]
+    extra_w_m2 = irradiance.get_extra_radiation(times.day_of_year.to_numpy(), method="spencer")
     return Sun(
         zenith_deg=zenith_deg,
         azimuth_deg=azimuth_deg,
         lit=lit,
-        extra_w_m2=np.asarray(irradiance.get_extra_radiation(times, method="spencer"), dtype=np.float64),
+        extra_w_m2=np.asarray(extra_w_m2, dtype=np.float64),
         airmass=np.asarray(atmosphere.get_relative_airmass(np.minimum(zenith_deg, 90.0)), dtype=np.float64),
     )
 

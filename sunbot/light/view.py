@@ -74,7 +74,7 @@ def light_through(sky: SkyParts, factors: Factors, runs: list[Run]) -> Iterator[
         )
         block = buffer[: len(diffuse)]
         np.multiply(_at(factors.direct, run.rows), sky.direct[run.times, None], out=block)
-        block += np.maximum(diffuse, 0.0)
+        block += np.maximum(diffuse, 0.0)  # a dark band at the horizon takes no more than there is
         yield run, block
 
 
@@ -167,8 +167,7 @@ def _diffuse_at(panel: Panel, site: Site, nose_deg: FloatArray) -> FloatArray:
 
 def slope_of(site: Site) -> tuple[float, float]:
     """Slope of the ground and the direction it falls to [deg]; (0, 0) on level ground."""
-    terrain = getattr(site, "terrain", None)
-    return (0.0, 0.0) if terrain is None else (float(terrain.slope_deg), float(terrain.aspect_deg))
+    return (0.0, 0.0) if site.terrain is None else (site.terrain.slope_deg, site.terrain.aspect_deg)
 
 
 def _faces(panel: Panel, site: Site, nose_deg: FloatArray) -> FloatArray:
