@@ -99,10 +99,24 @@ def low_of_return(mean: FloatArray | float, sd: FloatArray | float, years: float
     ------
     Published: Gumbel, Statistics of Extremes (1958); moments fit, mirrored for minima.
     """
-    if not years > 1.0:
-        raise ValueError(f"a return period of {years} years is not above 1")
-    factor = math.sqrt(6.0) / math.pi * (_EULER + math.log(-math.log1p(-1.0 / years)))
-    return np.maximum(np.asarray(mean) + np.asarray(sd) * factor, 0.0)
+    return np.maximum(np.asarray(mean) + np.asarray(sd) * _gumbel_factor(years), 0.0)
+
+
+def fitted_low(lows: FloatArray, years: float) -> FloatArray:
+    """The low of return period ``years`` from yearly lows along the last axis; the axes before it stay.
+
+    Light has a lower end that Gumbel's law lacks: on short spells of generated years its 20-year low comes out 14 to
+    45 % too dark, that of Weibull's law (Gumbel's for the logarithms) under 14 %, under 9 % from three days on. So
+    the logarithms are fitted where all lows are above 0, and the lows themselves elsewhere.
+
+    Source
+    ------
+    Published: Weibull, J. Appl. Mech. 18 (1951) 293; as the third law of extremes in Gumbel (1958).
+    """
+    if not (lows > 0.0).all():
+        return low_of_return(lows.mean(axis=-1), lows.std(axis=-1, ddof=1), years)
+    logs = np.log(lows)
+    return np.asarray(np.exp(logs.mean(axis=-1) + logs.std(axis=-1, ddof=1) * _gumbel_factor(years)))
 
 
 def return_period(lows: FloatArray, low: float) -> float:
@@ -127,8 +141,7 @@ def low_interval(lows: FloatArray, years: float, *, seed: int) -> tuple[float, f
     if len(lows) < FEWEST_YEARS or years > 2 * len(lows):
         raise ValueError(f"{len(lows)} years do not tell what comes once in {years:g}")
     drawn = np.random.default_rng(seed).choice(lows, size=(_DRAWS, len(lows)))
-    levels = low_of_return(drawn.mean(axis=1), drawn.std(axis=1, ddof=1), years)
-    low, high = np.quantile(levels, (0.025, 0.975))
+    low, high = np.quantile(fitted_low(drawn, years), (0.025, 0.975))
     return float(low), float(high)
 
 
@@ -182,6 +195,17 @@ def dark_spells(
         year = int(np.argmin(lows))
         lowest = float(lows[year])
         period = return_period(lows, lowest) if len(lows) >= FEWEST_YEARS else None
-        low, high = (None, None) if period is None else low_interval(lows, max(period, 2.0), seed=seed)
+        low: float | None = None
+        high: float | None = None
+        if period is not None:
+            low, high = low_interval(lows, max(period, 2.0), seed=seed)
+            low, high = min(low, lowest), max(high, lowest)
         spells.append(DarkSpell(days, lowest, dates[year, starts[year]].item(), period, low, high))
     return tuple(spells)
+
+
+def _gumbel_factor(years: float) -> float:
+    """Standard deviations from the mean to the low of return period ``years``, by Gumbel's law for minima."""
+    if not years > 1.0:
+        raise ValueError(f"a return period of {years} years is not above 1")
+    return math.sqrt(6.0) / math.pi * (_EULER + math.log(-math.log1p(-1.0 / years)))
