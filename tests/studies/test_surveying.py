@@ -13,7 +13,7 @@ import pytest
 from sunbot.errors import InputError
 from sunbot.inputs.site import Climate, Site, WeatherSource
 from sunbot.sky import weather_for
-from sunbot.studies.survey import survey
+from sunbot.studies.surveying import survey
 
 # An invented climate at an invented place.
 CLIMATE = Climate(
