@@ -23,6 +23,7 @@ Whole = Annotated[int, Strict()]
 Flag = Annotated[bool, Strict()]
 Text = Annotated[str, Strict()]
 Named = Annotated[str, Strict(), Field(min_length=1, max_length=80)]
+FileName = Annotated[str, Strict(), Field(min_length=1, max_length=1000)]
 Share = Annotated[Number, Field(ge=0, le=1)]
 Turn = Annotated[Number, Field(ge=-360, le=360)]
 """An angle in degrees, either way round."""

@@ -7,6 +7,7 @@ from typing import Any, Literal
 
 from . import checks
 from .fields import (
+    FileName,
     Flag,
     Horizon,
     Named,
@@ -36,7 +37,7 @@ class WeatherSource(Part):
     source: Literal["climate", "file", "clear-sky", "nasa-power"] = key(
         "climate", 'where the light comes from: "climate", "file", "clear-sky" or "nasa-power"'
     )
-    file: Named | None = key(
+    file: FileName | None = key(
         None, "weather file, relative to this one; or pvlib-data:NAME", example="pvlib-data:723170TYA.CSV"
     )
     label: Literal["start", "middle", "end"] | None = key(

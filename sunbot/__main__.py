@@ -1,0 +1,5 @@
+"""``python -m sunbot``."""
+
+from .cli import main
+
+main()

@@ -1,0 +1,31 @@
+"""Each study's answer with the text, table and picture that belong to it; what draws loads only when asked for."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from .delivery import Outputs, deliver
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+    from ..studies import CheckResult
+
+
+def deliver_check(result: CheckResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:
+    """Write what was asked for; return what belongs on stdout."""
+    from .text import check_text
+
+    def csv(answer: CheckResult, path: Path) -> None:
+        from .tables import trace_table, write_table
+
+        write_table(trace_table(answer), path)
+
+    def figure(answer: CheckResult) -> Figure:
+        from .plots import check_figure
+
+        return check_figure(answer)
+
+    return deliver(result, outputs, text=check_text, csv=csv, figure=figure, notes=notes)

@@ -1,0 +1,187 @@
+"""The answer of `check` as a person reads it on a terminal."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from typing import TYPE_CHECKING
+
+from ..types import Caution
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+    from ..studies.checking import CheckResult
+
+MONTH_NAMES = ("Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec")
+WIDTH = 96
+
+OUT_NAMES = {
+    "loads": "work of the loads",
+    "idle": "idling (converters and loads that wait)",
+    "rails": "rail conversion",
+    "rail_wire": "rail wires",
+    "controller": "controller, own use included",
+    "panel_wire": "panel wires",
+    "battery_loss": "battery, in and out",
+    "self_discharge": "self-discharge",
+    "heater": "battery heater",
+    "boots": "restarts",
+    "off_draw": "draw while cut off",
+    "spilled": "not taken (battery full, frost, limits)",
+}
+
+
+def check_text(result: CheckResult) -> str:
+    """All of the answer, most important first."""
+    parts = [
+        check_head(result),
+        months_text(result.months),
+        _autonomy(result),
+        _outages(result),
+        _flows(result),
+        cautions_text(result.cautions),
+    ]
+    return "\n\n".join(part for part in parts if part) + "\n"
+
+
+def check_head(result: CheckResult) -> str:
+    """The verdict: met or not, how sure, with what."""
+    robot, verdict, target = result.robot, result.verdict, result.robot.target
+    battery = robot.battery
+    survived, years = int(verdict.years_survived[0]), verdict.years
+    lines = [
+        f"{robot.name} at {robot.site.name}: {'target met' if result.met else 'TARGET NOT MET'}, judged with the worn "
+        f"battery ({battery.worn_capacity * battery.capacity_ah:.3g} of {battery.capacity_ah:.3g} Ah)",
+        f"  panel {robot.watts:.4g} W, {robot.controller.kind}, battery {battery.cells_in_series} cells "
+        f"{battery.chemistry}",
+        f"  weather: {result.weather.origin}",
+        "",
+    ]
+    noun = "deployments" if robot.deployment is not None else "years"
+    share = f"  alive in {survived} of {years} {noun}" if years > 1 else _one_year(survived)
+    if result.interval is not None:
+        low, high = result.interval
+        share += f" = {verdict.survival[0]:.0%}, 95 % interval {low:.1%} to {high:.1%}; target {target.survival:.0%}"
+    lines.append(share + _mark(bool(verdict.survival_met[0])))
+    lines.append(f"  with all light 10 % lower: {_alive(result.survival_light_minus_10, years)}")
+    if result.survival_worst_parked is not None:
+        lines.append(f"  parked the wrong way all the time: {_alive(result.survival_worst_parked, years)}")
+    if not math.isnan(verdict.work_done[0]):
+        lines.append(
+            f"  skippable work done in the worst month: {verdict.work_done[0]:.0%}; target {target.work_done:.0%}"
+            + _mark(bool(verdict.work_met[0]))
+        )
+    if result.visits_per_year > 0:
+        lines.append(f"  someone has to go there and restart it {result.visits_per_year:.2g} times a year")
+    return "\n".join(lines)
+
+
+def _one_year(survived: int) -> str:
+    return f"  {'alive' if survived else 'dies'} in the one year tried"
+
+
+def _mark(met: bool) -> str:
+    return " (met)" if met else " (NOT met)"
+
+
+def _alive(share: float, years: int) -> str:
+    if years == 1:
+        return "still alive" if share == 1 else "dies"
+    return f"alive in {share:.0%} of years"
+
+
+def months_text(months: pd.DataFrame) -> str:
+    """The table by month and the months in deficit."""
+    head = (
+        f"  {'':5}{'light on':>10}{'harvest':>9}{'demand':>9}{'harvest':>9}{'lowest':>8}{'hours':>8}{'work':>7}\n"
+        f"  {'':5}{'panel':>10}{'offered':>9}{'asked':>9}{'over':>9}{'charge':>8}{'out':>8}{'done':>7}\n"
+        f"  {'':5}{'Wh/m2/day':>10}{'Wh/day':>9}{'Wh/day':>9}{'demand':>9}{'':>8}{'a year':>8}"
+    )
+    rows = [head]
+    for name, (_, row) in zip(MONTH_NAMES, months.iterrows(), strict=True):
+        if math.isnan(row["lowest_soc"]):
+            rows.append(f"  {name:5}{'not deployed':>19}")
+            continue
+        rows.append(
+            f"  {name:5}{row['plane_wh_m2_day']:>10.0f}{row['harvest_wh_day']:>9.1f}{row['demand_wh_day']:>9.1f}"
+            f"{_number(row['harvest_over_demand'], '.2f'):>9}{row['lowest_soc']:>8.0%}"
+            f"{row['hours_out_per_year']:>8.1f}{_number(row['work_done'], '.0%'):>7}"
+        )
+    deficit = [
+        name
+        for name, ratio in zip(MONTH_NAMES, months["harvest_over_demand"], strict=True)
+        if ratio < 1  # NaN compares false
+    ]
+    tail = f"  Harvest falls short of demand in {', '.join(deficit)}." if deficit else ""
+    return "Month by month (means over all years; lowest charge of all years)\n" + "\n".join([*rows, tail]).rstrip()
+
+
+def _number(value: float, form: str) -> str:
+    return "-" if math.isnan(value) else format(value, form)
+
+
+def _autonomy(result: CheckResult) -> str:
+    autonomy = result.autonomy
+    month = MONTH_NAMES[autonomy.worst_month - 1]
+    week = (
+        "carried without end"
+        if autonomy.darkest_week_worn_h is None
+        else f"{_hours(autonomy.darkest_week_worn_h)} worn, {_hours(autonomy.darkest_week_new_h)} new"
+    )
+    return (
+        f"From full to cut-off under the essential load of {month}\n"
+        f"  no light at all: {_hours(autonomy.dark_worn_h)} worn, {_hours(autonomy.dark_new_h)} new\n"
+        f"  in the light of the darkest week: {week}"
+    )
+
+
+def _hours(hours: float | None) -> str:
+    if hours is None:
+        return "without end"
+    if hours < 72:
+        return f"{hours:.0f} h"
+    return f"{hours:.0f} h ({hours / 24:.1f} days)"
+
+
+def _outages(result: CheckResult) -> str:
+    outages = result.outages
+    if outages.first is None:
+        return "Outages of essential loads: none."
+    zone = result.robot.site.time_zone
+    first = outages.first.tz_convert(zone).strftime("%Y-%m-%d %H:%M")
+    return (
+        f"Outages of essential loads: {outages.count_per_year:.2g} a year, {outages.hours_per_year:.3g} h a year, "
+        f"the longest {_hours(outages.longest_h)}\n"
+        f"  the first begins {first} local time; {result.unserved_share:.2%} of the essential energy is not served"
+    )
+
+
+def _flows(result: CheckResult) -> str:
+    energy, hours = result.energy, float(result.lanes.step_h.sum() / result.lanes.step_h.shape[1])
+    per_day = 24.0 / hours
+    lines = [f"Where the panel's {energy.panel * per_day:.1f} Wh a day go"]
+    for key, name in sorted(OUT_NAMES.items(), key=lambda item: -energy.out[item[0]]):
+        wh = energy.out[key] * per_day
+        if wh >= 0.005:
+            share = energy.out[key] / energy.panel if energy.panel > 0 else math.nan
+            lines.append(f"  {wh:>8.2f} Wh  {_number(share, '.1%'):>6}  {name}")
+    served = energy.out["loads"] + energy.out["idle"] + energy.out["rails"] + energy.out["rail_wire"]
+    if served > 0:
+        lines.append(f"  Of what the rails draw, {energy.out['idle'] / served:.0%} is idling.")
+    steps = ", ".join(f"{step.step} {-step.wh_per_year * per_day:+.1f}" for step in result.light_steps)
+    lines.append(f"  Before the panel, in Wh a day against level ground in the open: {steps}")
+    return "\n".join(lines)
+
+
+def cautions_text(cautions: Iterable[Caution]) -> str:
+    """The cautions, wrapped, one paragraph each; empty where there are none."""
+    import textwrap
+
+    lines = [
+        textwrap.fill(
+            f"{caution.where}: {caution.text} [{caution.code}]", WIDTH, initial_indent="  - ", subsequent_indent="    "
+        )
+        for caution in cautions
+    ]
+    return "\n".join(["Cautions", *lines]) if lines else ""

@@ -1,0 +1,78 @@
+"""How long a full battery lasts: in the dark, and in the light of the darkest week."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from ..inputs.robot import Robot
+from ..storage import autonomy_h
+from ..types import FloatArray
+from .chain import Age, Chain
+
+WEEK_H = 168.0
+
+
+@dataclass(frozen=True)
+class Autonomy:
+    """Hours from full to cut-off under the essential load of the hungriest month, in its mean cold; None: no end."""
+
+    dark_new_h: float | None
+    dark_worn_h: float | None
+    darkest_week_new_h: float | None
+    darkest_week_worn_h: float | None
+    worst_month: int
+
+    def to_dict(self) -> dict[str, Any]:
+        """As in the JSON."""
+        return {
+            "dark": {"new": self.dark_new_h, "worn": self.dark_worn_h},
+            "darkest_week": {"new": self.darkest_week_new_h, "worn": self.darkest_week_worn_h},
+            "worst_month": self.worst_month,
+        }
+
+
+def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
+    """Autonomy of the robot as filed; of months equally hungry the coldest counts."""
+    lanes, supply, asked = chain.lanes(robot), chain.supply(robot), chain.demand(robot)
+    rows = chain.weather.row
+    essential_w = asked.essential.total_w.mean(axis=-1)[rows] + supply.own_use_w
+    air_c = chain.weather.table["temp_air"].to_numpy()
+    months = np.array([month for month in range(1, 13) if (lanes.month == month).any()])
+    load_w = np.array([_mean(essential_w, chain, robot, month) for month in months])
+    cold_c = np.array([_mean(air_c, chain, robot, month) for month in months])
+    hungry = load_w >= load_w.max() * (1.0 - 1e-6)
+    at = int(np.flatnonzero(hungry)[np.argmin(cold_c[hungry])])
+    week_w = darkest_week_w(supply.offer_w[:, 0, :].mean(axis=-1), chain.weather.step_h)
+    temp_c = float(cold_c[at]) + robot.battery.box_rise_c
+
+    def hours(age: Age, harvest_w: float) -> float | None:
+        draw_w = float(load_w[at]) - harvest_w
+        if draw_w <= 0:
+            return None
+        return autonomy_h(
+            chain.pack(robot, age=age), battery_ah=robot.battery.capacity_ah, draw_w=draw_w, temp_c=temp_c
+        )
+
+    return Autonomy(
+        dark_new_h=hours("new", 0.0),
+        dark_worn_h=hours("worn", 0.0),
+        darkest_week_new_h=hours("new", week_w),
+        darkest_week_worn_h=hours("worn", week_w),
+        worst_month=int(months[at]),
+    )
+
+
+def darkest_week_w(offer_w: FloatArray, step_h: float) -> float:
+    """Mean harvest of the darkest 7 days in a row [W]; the weather is a ring."""
+    steps = min(round(WEEK_H / step_h), offer_w.size)
+    total = np.concatenate(([0.0], np.cumsum(np.concatenate((offer_w, offer_w[:steps])))))
+    return max(0.0, float((total[steps:] - total[:-steps]).min()) / steps)
+
+
+def _mean(values: FloatArray, chain: Chain, robot: Robot, month: int) -> float:
+    lanes = chain.lanes(robot)
+    rows, hours = lanes.row[lanes.month == month], lanes.step_h[lanes.month == month]
+    return float((values[rows] * hours).sum() / hours.sum())

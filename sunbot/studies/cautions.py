@@ -1,0 +1,120 @@
+"""What the reader of an answer must know before trusting it."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..demand import rail_cautions
+from ..harvest import supply_cautions
+from ..inputs.robot import Robot
+from ..storage import Balance, box_temp_c, resistance_ohm
+from ..types import Caution
+from .chain import Chain
+from .statistics import wilson_interval, years_to_settle
+from .verdict import Verdict
+
+BLOCKED_NOTED = 0.01
+"""Share of the year's harvest offered to a battery too cold or too warm to be charged that is worth a word."""
+
+SAFETY = {
+    "lithium": "Lithium cells need a protection circuit, a fuse at the pack, and no charging below freezing: charging "
+    "a cold cell plates metal inside it and can start a fire later. Keep them from crushing, water and heat.",
+    "lead-acid": "Charging lead-acid gives off hydrogen, which explodes: vent the box and keep sparks away; "
+    "the acid burns.",
+    "nimh": "A sealed pack on a charger without cut-off overheats; short circuits burn: fuse it at the pack.",
+}
+SAFETY_TAIL = " Local codes and licensed practice go first."
+
+
+def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
+    """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery."""
+    return (
+        *chain.weather.cautions,
+        *supply_cautions(robot, chain.weather, lights=chain.lights(robot), supply=chain.supply(robot)),
+        *_rails(chain, robot),
+        *_battery(chain, robot),
+    )
+
+
+def check_cautions(chain: Chain, robot: Robot, balance: Balance, verdict: Verdict) -> tuple[Caution, ...]:
+    """All cautions of a check: the standing ones and those of its outcome."""
+    return (*_outcome(robot, balance, verdict), *standing_cautions(chain, robot))
+
+
+def _outcome(robot: Robot, balance: Balance, verdict: Verdict) -> Iterator[Caution]:
+    years, survived, target = verdict.years, int(verdict.years_survived[0]), robot.target.survival
+    if years > 1 and verdict.survival_met[0]:
+        low, _ = wilson_interval(survived, years)
+        enough = years_to_settle(target)
+        if low < target and enough is not None:
+            yield Caution(
+                "few-years",
+                "survival",
+                f"{years} years leave room for a true share of {low:.0%}; {enough} years without a failure would "
+                f"settle {target:.0%} (--years {enough}).",
+            )
+    if balance.cannot_give[0]:
+        yield Caution(
+            "pack-too-weak",
+            "battery",
+            "At times the loads ask for more than the pack can give through its resistance; they are dropped then. "
+            "Take a larger pack or one of lower resistance.",
+        )
+    if not balance.settled[0]:
+        yield Caution(
+            "not-periodic",
+            "battery",
+            "The years did not settle into a ring: the charge at their seam still differed after 20 rounds, and the "
+            "worse of the last two is given. The robot lives on the edge.",
+        )
+
+
+def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
+    pack, air_c = chain.pack(robot), chain.weather.table["temp_air"].to_numpy()
+    coldest_c, hottest_c = (float(extreme) + robot.battery.box_rise_c for extreme in (air_c.min(), air_c.max()))
+    cutoff_v = float(np.interp(pack.cutoff_soc, pack.curve.soc, pack.curve.rest_v))
+    return rail_cautions(
+        robot,
+        lowest_v=cutoff_v,
+        highest_v=pack.cells * pack.kind.top_v,
+        resistance_ohm=resistance_ohm(pack, robot.battery.capacity_ah, temp_c=max(coldest_c, -20.0)),
+        soc_nodes=pack.curve.soc,
+        rest_v_nodes=pack.curve.rest_v,
+        hottest_c=hottest_c,
+    )
+
+
+def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
+    battery, weather = robot.battery, chain.weather
+    pack = chain.pack(robot)
+    box_c = box_temp_c(
+        weather.table["temp_air"].to_numpy(), step_h=weather.step_h, lag_h=pack.box_lag_h, rise_c=pack.box_rise_c
+    )
+    offer_w = chain.supply(robot).offer_w[:, 0, :].mean(axis=-1)
+    offered = float(offer_w.sum())
+    for code, blocked, limit_c, word in (
+        ("frost", box_c < pack.charge_min_c, pack.charge_min_c, "below"),
+        ("heat", box_c > pack.charge_max_c, pack.charge_max_c, "above"),
+    ):
+        share = float(offer_w[blocked].sum()) / offered if offered > 0 else 0.0
+        heated = code == "frost" and battery.heater_w > 0 and battery.heater_on_below_c >= pack.charge_min_c
+        if share > BLOCKED_NOTED and not heated:
+            yield Caution(
+                code,
+                "battery",
+                f"{share:.0%} of the year's harvest comes while the box is {word} {limit_c:g} degC, when these cells "
+                "must not be charged; it can then only feed the loads. "
+                + ("Think of box_rise_c, heater_w or another chemistry." if code == "frost" else "Shade the box."),
+            )
+    thresholds = any(load.skip_below_soc is not None for load in robot.loads)
+    if battery.chemistry == "lifepo4" and thresholds:
+        yield Caution(
+            "flat-voltage",
+            "battery",
+            "The voltage of this chemistry hardly tells its charge between 20 and 90 %: thresholds by charge need a "
+            "counter of ampere-hours on board, not a voltmeter.",
+        )
+    family = "lithium" if battery.chemistry in ("lifepo4", "li-ion") else battery.chemistry
+    yield Caution("safety", f"{battery.chemistry} battery", SAFETY[family] + SAFETY_TAIL)

@@ -1,0 +1,174 @@
+"""The stages joined once per weather, with what they made kept under the frozen parts it was made from."""
+
+from __future__ import annotations
+
+from collections import OrderedDict
+from collections.abc import Callable, Hashable
+from typing import Any, Literal, TypeVar
+
+import numpy as np
+
+from ..calendar import Lanes, energy_years, standard_clock
+from ..demand import Demand, demand
+from ..harvest import HarvestYield, Supply, follows_battery, harvest_yield, supply
+from ..inputs.robot import Robot
+from ..light import Light, Sun, lights_on, sun_over
+from ..sky import Weather
+from ..storage import Balance, Designs, Pack, as_filed, balance, battery_voltages, pack_of
+from ..types import FloatArray, IntArray
+
+Age = Literal["worn", "new"]
+Keep = Literal["verdict", "months", "trace"]
+T = TypeVar("T")
+
+N_VOLTS = 5
+"""Battery voltages at which supply and demand are tabulated where they follow the battery."""
+
+
+class _Kept:
+    """The last few results of a stage, by key."""
+
+    def __init__(self, most: int) -> None:
+        self._most = most
+        self._kept: OrderedDict[Hashable, Any] = OrderedDict()
+
+    def get(self, key: Hashable, make: Callable[[], T]) -> T:
+        if key in self._kept:
+            self._kept.move_to_end(key)
+        else:
+            self._kept[key] = make()
+            if len(self._kept) > self._most:
+                self._kept.popitem(last=False)
+        found: T = self._kept[key]
+        return found
+
+
+class Chain:
+    """Weather above one site, and everything studies work out of it.
+
+    Robots that share a stage's inputs share its result: designs that differ in watts, capacity or factors cost one
+    balance, a change of tilt or heading re-runs the light.
+    """
+
+    def __init__(self, weather: Weather, *, seed: int = 1) -> None:
+        self.weather = weather
+        self.seed = seed
+        self.months: IntArray = standard_clock(weather.times, weather.place.time_zone).month
+        self._sun: Sun | None = None
+        self._lights = _Kept(2)
+        self._supplies = _Kept(4)
+        self._demands = _Kept(4)
+        self._lanes = _Kept(4)
+
+    @property
+    def reference(self) -> bool:
+        """Whether the weather lives in the calendar of 2001."""
+        return self.weather.kind != "record"
+
+    def sun(self) -> Sun:
+        """The sun over the reference rows."""
+        if self._sun is None:
+            self._sun = sun_over(self.weather)
+        return self._sun
+
+    def lights(self, robot: Robot) -> tuple[Light, ...]:
+        """Light on each panel of ``robot``."""
+        return self._lights.get(_light_key(robot), lambda: lights_on(robot, self.weather, self.sun(), seed=self.seed))
+
+    def supply(self, robot: Robot, *, watts: FloatArray | None = None, accounts: bool = True) -> Supply:
+        """What the panels offer at the battery, for the robot's own wattage or for each of ``watts``."""
+        sizes = np.array([robot.watts]) if watts is None else np.asarray(watts, dtype=float)
+        volts = self.battery_v(robot)
+        key = (_light_key(robot), robot.panels, robot.controller, tuple(sizes), tuple(volts), accounts)
+        return self._supplies.get(
+            key,
+            lambda: supply(self.lights(robot), self.weather, robot, watts=sizes, battery_v=volts, accounts=accounts),
+        )
+
+    def harvest_yield(self, robot: Robot) -> HarvestYield:
+        """What the cells give in a year after each step."""
+        return harvest_yield(self.lights(robot), self.weather, robot, self.supply(robot))
+
+    def demand(self, robot: Robot) -> Demand:
+        """What the loads ask for at the battery."""
+        volts = self.battery_v(robot)
+        key = (robot.loads, robot.rails, robot.site.time_zone, robot.site.longitude, tuple(volts))
+        return self._demands.get(
+            key, lambda: demand(robot, self.weather.ref_times, battery_v=volts, reference=self.reference)
+        )
+
+    def battery_v(self, robot: Robot) -> FloatArray:
+        """Pack voltages at which supply and demand are tabulated: one where nothing depends on the voltage."""
+        ends_v = battery_voltages(pack_of(robot.battery), n=2)
+        if follows_battery(robot) or any(rail.kind in ("linear", "none") for rail in robot.rails):
+            return battery_voltages(pack_of(robot.battery), n=N_VOLTS)
+        return np.array([ends_v.mean()])
+
+    def first_month(self, robot: Robot) -> int:
+        """The month energy years start with: the one after that of the largest surplus of the robot as filed."""
+        if robot.deployment is not None:
+            return robot.deployment.first[0]
+        offer_w = self.supply(robot).offer_w[:, 0, :].mean(axis=-1)
+        asked = self.demand(robot)
+        asked_w = asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1)
+        surplus_w = offer_w - asked_w[self.weather.row]
+        by_month = [
+            surplus_w[self.months == month].mean() if (self.months == month).any() else -np.inf
+            for month in range(1, 13)
+        ]
+        return (int(np.argmax(by_month)) + 1) % 12 + 1
+
+    def lanes(self, robot: Robot) -> Lanes:
+        """Energy years (or deployments) of ``robot`` as filed, side by side."""
+        deployment = None if robot.deployment is None else (robot.deployment.first, robot.deployment.last)
+        first_month = self.first_month(robot)
+        return self._lanes.get(
+            (first_month, deployment),
+            lambda: energy_years(
+                self.weather.times,
+                step_h=self.weather.step_h,
+                zone=self.weather.place.time_zone,
+                first_month=first_month,
+                deployment=deployment,
+            ),
+        )
+
+    def pack(self, robot: Robot, *, age: Age = "worn") -> Pack:
+        """The robot's pack, worn (as it is judged) or new."""
+        return pack_of(robot.battery, age=age)
+
+    def run(
+        self,
+        robot: Robot,
+        designs: Designs | None = None,
+        *,
+        watts: FloatArray | None = None,
+        lanes: Lanes | None = None,
+        age: Age = "worn",
+        keep: Keep = "months",
+    ) -> Balance:
+        """Balance of the robot as filed, or of every one of ``designs`` (whose ``watts_at`` index ``watts``).
+
+        ``lanes`` holds several robots to one calendar; left out, the robot's own.
+        """
+        asked = self.demand(robot)
+        return balance(
+            self.supply(robot, watts=watts, accounts=watts is None or keep != "verdict"),
+            asked,
+            self.pack(robot, age=age),
+            self.lanes(robot) if lanes is None else lanes,
+            as_filed(robot, n_levels=len(asked.level_loads)) if designs is None else designs,
+            air_temp_c=self.weather.table["temp_air"].to_numpy(),
+            row=self.weather.row,
+            keep=keep,
+        )
+
+
+def _light_key(robot: Robot) -> Hashable:
+    """All of a robot that its light depends on."""
+    moving = tuple((load.hours, load.months, load.weekdays, load.clock) for load in robot.loads if load.moves)
+    mounts = tuple(
+        (panel.tilt_deg, panel.azimuth_deg, panel.dirt_loss, panel.obstructions, panel.bypass_groups)
+        for panel in robot.panels
+    )
+    return (robot.site, robot.heading, robot.heading_deg, robot.parked, robot.window, moving, mounts)

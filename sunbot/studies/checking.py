@@ -1,0 +1,232 @@
+"""`check`: does its panel keep this robot alive here, how sure is that, when does it fail, and why?"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+import pandas as pd
+
+from .. import __version__
+from ..calendar import Lanes
+from ..harvest.temperatures import mean_cell_temp_c
+from ..inputs.robot import Robot
+from ..sky import Weather, weather_for
+from ..storage import Balance, Designs, Trace, as_filed
+from ..types import Caution, FloatArray
+from .autonomy import Autonomy, autonomy_of
+from .cautions import check_cautions
+from .chain import Chain
+from .designs import side_by_side
+from .flows import EnergyYear, Step, energy_year, light_to_panel
+from .inputs_used import InputsUsed, inputs_used
+from .months import month_table
+from .plain import plain_document
+from .statistics import wilson_interval
+from .verdict import Verdict, verdict_on
+
+DIM_LIGHT_X = 0.9
+"""The light of the second opinion: everything 10 % darker."""
+
+
+@dataclass(frozen=True)
+class Outages:
+    """Outages of the essential loads over all years; ``first`` is the instant the first one began."""
+
+    hours_per_year: float
+    count_per_year: float
+    longest_h: float
+    first: pd.Timestamp | None
+
+
+@dataclass(frozen=True, eq=False)
+class CheckResult:
+    """The answer of `check`.
+
+    verdict : of the robot as filed (one design). survival_light_minus_10 : share alive with all light 10 % lower.
+    survival_worst_parked : share alive if a robot that roams always parks the wrong way; None where it does not apply.
+    months : DataFrame by month, columns as in the JSON. trace : step by step, None unless asked for.
+    """
+
+    robot: Robot
+    weather: Weather
+    inputs: InputsUsed
+    verdict: Verdict
+    survival_light_minus_10: float
+    survival_worst_parked: float | None
+    visits_per_year: float
+    months: pd.DataFrame
+    autonomy: Autonomy
+    outages: Outages
+    unserved_share: float
+    energy: EnergyYear
+    light_steps: tuple[Step, ...]
+    cautions: tuple[Caution, ...]
+    lanes: Lanes
+    balance: Balance
+    trace: Trace | None = None
+    plane_w_m2: FloatArray | None = None
+    cell_temp_c: FloatArray | None = None
+
+    @property
+    def met(self) -> bool:
+        """Whether the target is met."""
+        return bool(self.verdict.target_met[0])
+
+    @cached_property
+    def interval(self) -> tuple[float, float] | None:
+        """95 % interval of the share of years survived; None for a single year."""
+        if self.verdict.years == 1:
+            return None
+        return wilson_interval(int(self.verdict.years_survived[0]), self.verdict.years)
+
+    def to_dict(self) -> dict[str, Any]:
+        """The JSON document of ``sunbot check --json``."""
+        verdict, target = self.verdict, self.robot.target
+        low, high = self.interval or (None, None)
+        worst = self.survival_worst_parked
+        return plain_document(
+            {
+                "tool": {"name": "sunbot", "version": __version__},
+                "inputs": self.inputs.to_dict(),
+                "verdict": {
+                    "target_met": self.met,
+                    "survival_met": bool(verdict.survival_met[0]),
+                    "work_met": bool(verdict.work_met[0]),
+                    "years": verdict.years,
+                    "years_survived": int(verdict.years_survived[0]),
+                    "survival": float(verdict.survival[0]),
+                    "survival_low": low,
+                    "survival_high": high,
+                    "survival_target": target.survival,
+                    "survival_light_minus_10": self.survival_light_minus_10,
+                    "work_done": float(verdict.work_done[0]),
+                    "work_target": target.work_done,
+                    "visits_per_year": self.visits_per_year,
+                }
+                | ({} if worst is None else {"survival_worst_parked": worst}),
+                "months": self.months.reset_index().to_dict(orient="records"),
+                "autonomy_h": self.autonomy.to_dict(),
+                "outages": {
+                    "hours_per_year": self.outages.hours_per_year,
+                    "count_per_year": self.outages.count_per_year,
+                    "longest_h": self.outages.longest_h,
+                    "first": self.outages.first,
+                },
+                "unserved_share": self.unserved_share,
+                "energy_wh_per_year": {
+                    "in": {"panel": self.energy.panel},
+                    "out": self.energy.out,
+                    "stored": self.energy.stored,
+                },
+                "light_to_panel": [{"step": step.step, "wh_per_year": step.wh_per_year} for step in self.light_steps],
+                "cautions": [caution.__dict__ for caution in self.cautions],
+            }
+        )
+
+
+def check(
+    robot: Robot, *, weather: Weather | None = None, years: int = 50, seed: int = 1, trace: bool = False
+) -> CheckResult:
+    """Does its panel keep ``robot`` alive at its site?
+
+    Parameters
+    ----------
+    weather : Weather, optional
+        Light it is held against; left out, ``weather_for(robot.site, years=years, seed=seed)``.
+    years, seed : int
+        Weather years to try, and the seed of everything drawn.
+    trace : bool
+        Keep the balance step by step (``result.trace``), for the CSV and the plots.
+
+    Raises
+    ------
+    InputError
+        The site's weather cannot be used, or no such robot can be built.
+    """
+    weather = weather_for(robot.site, years=years, seed=seed) if weather is None else weather
+    return check_on(Chain(weather, seed=seed), robot, years=years, seed=seed, trace=trace)
+
+
+def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:
+    """`check` on a chain that may already hold the stages' results."""
+    lanes = chain.lanes(robot)
+    balance, dim = _run(chain, robot, trace=trace)
+    verdict = verdict_on(balance, robot.target)
+    plane_w_m2 = (chain.lights(robot)[0].plane_w_m2 * chain.lights(robot)[0].weight).sum(axis=1)
+    months = month_table(balance, lanes, plane_w_m2)
+    if balance.ledger is None:
+        raise RuntimeError("the balance kept no ledger")
+    worst = _survival_worst_parked(chain, robot, float(verdict.survival[0]))
+    return CheckResult(
+        robot=robot,
+        weather=chain.weather,
+        inputs=inputs_used(robot, chain.weather, years=verdict.years, seed=seed, first_month=lanes.first_month),
+        verdict=verdict,
+        survival_light_minus_10=dim,
+        survival_worst_parked=worst,
+        visits_per_year=float(balance.visits[:, 0].mean()),
+        months=months,
+        autonomy=autonomy_of(chain, robot),
+        outages=_outages(balance, lanes, chain.weather),
+        unserved_share=_unserved_share(balance),
+        energy=energy_year(balance.ledger),
+        light_steps=light_to_panel(robot, chain.lights(robot), chain.harvest_yield(robot)),
+        cautions=check_cautions(chain, robot, balance, verdict),
+        lanes=lanes,
+        balance=balance,
+        trace=balance.trace,
+        plane_w_m2=plane_w_m2 if trace else None,
+        cell_temp_c=mean_cell_temp_c(chain.lights(robot)[0], chain.weather, robot) if trace else None,
+    )
+
+
+def _run(chain: Chain, robot: Robot, *, trace: bool) -> tuple[Balance, float]:
+    """The robot as filed, and its survival under dimmer light: side by side where no trajectory is kept."""
+    filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
+    if trace:
+        balance = chain.run(robot, filed, keep="trace")
+        dim = verdict_on(chain.run(robot, _dimmed(filed), keep="verdict"), robot.target)
+        return balance, float(dim.survival[0])
+    both = chain.run(robot, side_by_side(filed, _dimmed(filed)), keep="months")
+    return both, float(verdict_on(both, robot.target).survival[1])
+
+
+def _dimmed(designs: Designs) -> Designs:
+    return replace(designs, light_x=designs.light_x * DIM_LIGHT_X)
+
+
+def _survival_worst_parked(chain: Chain, robot: Robot, as_filed: float) -> float | None:
+    """Share alive if the robot always parks the wrong way, where that differs from the answer."""
+    if robot.heading != "roams" or robot.parked == "worst":
+        return None
+    wrong_way = robot.model_copy(update={"parked": "worst"})
+    balance = chain.run(wrong_way, lanes=chain.lanes(robot), keep="verdict")
+    survival = float(verdict_on(balance, robot.target).survival[0])
+    return None if survival == as_filed else survival
+
+
+def _outages(balance: Balance, lanes: Lanes, weather: Weather) -> Outages:
+    if balance.outages is None or balance.longest_out_h is None or balance.first_out is None:
+        raise RuntimeError("the balance kept no outages")
+    began = balance.first_out[:, 0]
+    years = np.flatnonzero(began >= 0)
+    first = None
+    if years.size:
+        steps = lanes.row[began[years], years]
+        first = weather.times[int(steps.min())].tz_convert("UTC")
+    return Outages(
+        hours_per_year=float(balance.hours_out[:, :, 0].sum(axis=0).mean()),
+        count_per_year=float(balance.outages[:, 0].mean()),
+        longest_h=float(balance.longest_out_h[:, 0].max()),
+        first=first,
+    )
+
+
+def _unserved_share(balance: Balance) -> float:
+    if balance.demand_wh is None:
+        raise RuntimeError("the balance kept no demand")
+    asked = float((balance.demand_wh - balance.work_asked_wh)[:, :, 0].sum())
+    return float(balance.unserved_wh[:, :, 0].sum()) / asked if asked > 0 else 0.0
