@@ -1,4 +1,4 @@
-"""Generated days against printed values, and against 24 measured years that the generator never saw."""
+"""Generated days against printed values, and against 24 measured years of which only the monthly means are told."""
 
 from __future__ import annotations
 
