@@ -14,7 +14,8 @@ Obstructions = tuple[tuple[float, float, float], ...]
 
 _N_AZIMUTHS = 720
 AZIMUTHS_DEG: FloatArray = np.asarray((np.arange(_N_AZIMUTHS) + 0.5) * (360.0 / _N_AZIMUTHS), dtype=np.float64)
-_BAND_DEG = 6.5  # From memory: Perez et al., Solar Energy 39 (1987) 221, the horizon band of their first model
+BAND_DEG = 6.5
+"""Height of the band above the horizon. From memory: Perez et al., Solar Energy 39 (1987) 221, their first model."""
 _WHOLE_PANEL_DEG = 90.0  # Common practice: what fills a quarter of the view shades every cell of a small panel
 
 
@@ -76,7 +77,7 @@ def sky_shares(face: FloatArray, hidden_deg: FloatArray) -> tuple[FloatArray, Fl
     all_of_it = _irradiance_above(np.zeros_like(facing), facing, height=height).sum(axis=1)
     left = _irradiance_above(np.broadcast_to(hidden, facing.shape), facing, height=height).sum(axis=1)
     band_weight = np.maximum(facing, 0.0) + 1e-12  # a flat plane faces every azimuth alike
-    open_band = np.clip(1.0 - hidden_deg / _BAND_DEG, 0.0, 1.0)
+    open_band = np.clip(1.0 - hidden_deg / BAND_DEG, 0.0, 1.0)
     band = (band_weight * open_band).sum(axis=1) / band_weight.sum(axis=1)
     return np.divide(left, all_of_it, out=np.zeros_like(left), where=all_of_it > 0.0), band
 

@@ -7,15 +7,16 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from ..calendar import standard_clock
-from ..errors import Fault, InputError
 from ..inputs.robot import Panel, Robot
 from ..inputs.site import Site
 from ..sky.weather import Weather
 from ..types import FloatArray, IntArray
+from .behind_glass import behind_glass
 from .carriers import Light, LightYield, Sun
 from .glass import dirt_pass, snow_pass
 from .headings import N_HEADINGS, heading_matters, heading_weight, noses
 from .plane import SkyParts, sky_parts
+from .room import lamp_w_m2, weather_in_room
 from .view import Factors, Run, View, light_through, open_air, runs_of, under_horizon
 
 _ALL_ALIKE: FloatArray = np.ones((1, 1))
@@ -46,12 +47,12 @@ def lights_on(robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1) -> tup
     Raises
     ------
     InputError
-        The robot lives behind a window, which is not built yet.
+        The robot lives behind a window and does not stand still there.
     """
     outside = _outside(robot.site, weather, sun)
-    nose_deg = noses(robot, sun)
-    views = [_view(panel, robot, sun=sun, nose_deg=nose_deg) for panel in robot.panels]
-    kept = [_kept(panel, weather, outside.month) for panel in robot.panels]
+    views = _views(robot, weather, sun)
+    at_panel = weather_in_room(weather, robot.window)
+    kept = [_kept(panel, at_panel, outside.month) for panel in robot.panels]
     planes = [_filled(outside.left, view.plane, outside.runs) for view in views]
     cells = [
         _filled(outside.left, view.glass, outside.runs, times=dirt * snow)
@@ -89,12 +90,16 @@ def _outside(site: Site, weather: Weather, sun: Sun) -> _Outside:
     return _Outside(sky, under_horizon(sky, site, sun=sun, row=row), runs_of(row), month)
 
 
-def _view(panel: Panel, robot: Robot, *, sun: Sun, nose_deg: FloatArray) -> View:
-    """How the panel sees the sky."""
+def _views(robot: Robot, weather: Weather, sun: Sun) -> list[View]:
+    """How each panel sees the sky."""
     if robot.window is not None:
-        raise InputError(Fault("robot file: window", "light behind glass is not there yet", "no [window] for now"))
-    nose_deg = nose_deg if heading_matters(panel) else np.zeros((1, 1))
-    return open_air(panel, robot.site, sun=sun, nose_deg=nose_deg)
+        lamp = lamp_w_m2(robot.window, weather)
+        return [behind_glass(panel, robot, sun=sun, lamp_w_m2=lamp) for panel in robot.panels]
+    nose_deg, any_nose = noses(robot, sun), np.zeros((1, 1))
+    return [
+        open_air(panel, robot.site, sun=sun, nose_deg=nose_deg if heading_matters(panel) else any_nose)
+        for panel in robot.panels
+    ]
 
 
 def _kept(panel: Panel, weather: Weather, month: IntArray) -> tuple[FloatArray, FloatArray | float]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import NamedTuple
 
 import numpy as np
@@ -22,12 +22,16 @@ _TABLE_NOSES_DEG = np.arange(0.0, 361.0, 5.0)
 
 @dataclass(frozen=True, eq=False)
 class Factors:
-    """What one watt of each part of SkyParts brings; each (n_rows or 1, n_headings or 1) over the reference rows."""
+    """What one watt of each part of SkyParts brings; each (n_rows or 1, n_headings or 1) over the reference rows.
+
+    lamp : light that does not come from the sky [W/m²], in the same shape.
+    """
 
     direct: FloatArray
     isotropic: FloatArray
     brightening: FloatArray
     ground: FloatArray
+    lamp: FloatArray = field(default_factory=lambda: np.zeros((1, 1)))
 
 
 @dataclass(frozen=True, eq=False)
@@ -74,7 +78,9 @@ def light_through(sky: SkyParts, factors: Factors, runs: list[Run]) -> Iterator[
         )
         block = buffer[: len(diffuse)]
         np.multiply(_at(factors.direct, run.rows), sky.direct[run.times, None], out=block)
-        block += np.maximum(diffuse, 0.0)  # a dark band at the horizon takes no more than there is
+        np.maximum(diffuse, 0.0, out=diffuse)  # a dark band at the horizon takes no more than there is
+        diffuse += _at(factors.lamp, run.rows)
+        block += diffuse
         yield run, block
 
 
