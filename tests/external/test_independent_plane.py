@@ -11,7 +11,7 @@ import pytest
 from pvlib import irradiance
 
 from sunbot.inputs.robot import Robot
-from sunbot.light import lights_on, sun_over
+from sunbot.light import lights_on, parked_otherwise, sun_over
 from sunbot.sky import Weather, weather_for
 from sunbot.types import Place
 
@@ -112,3 +112,22 @@ def test_a_flat_plane_returns_the_file_s_own_total(year):
     weather = weather_for(robot.site)
     [light] = lights_on(robot, weather, sun_over(weather))
     assert light.plane_w_m2.sum() == pytest.approx(table["ghi"].sum(), rel=5e-4)
+
+
+def test_lying_the_wrong_way_through_december():
+    """At 55 N the poorest heading gives half of the mean on a panel tilted 10 deg, a little over a third at 30 deg."""
+    # Computed apart from this code for such a place: 0.5 and 0.34 to 0.38; 0.06 for the December of this file.
+    table, header = pvlib.iotools.read_tmy3(
+        Path(pvlib.__file__).parent / "data" / "703165TY.csv", coerce_year=2001, map_variables=True
+    )
+    december = (table.index - pd.Timedelta("30min")).month == 12
+    for tilt, share in ((10, 0.5), (30, 0.36)):
+        robot = robot_at("703165TY.csv", header, tilt=tilt, azimuth=0)
+        robot = robot.model_copy(update={"heading": "roams", "parked": "mean"})
+        weather = weather_for(robot.site)
+        lights = lights_on(robot, weather, sun_over(weather))
+        worst = parked_otherwise(lights, robot.model_copy(update={"parked": "worst"}), weather)
+        mean_wh, worst_wh = (
+            (light.cells_w_m2 * light.weight).sum(axis=1)[december].sum() for light in (*lights, *worst)
+        )
+        assert worst_wh / mean_wh == pytest.approx(share, abs=0.06)
