@@ -25,7 +25,7 @@ def clear_sky_weather(site: Site) -> Weather:
     """8,760 hours of 2001 under the place's mean clear sky; temperature and wind from [climate] or assumed."""
     place = Place(site.latitude, site.longitude, site.altitude_m, site.time_zone)
     times = generated_times(1, site.time_zone)
-    light = clear_light(times, place)
+    light = clear_light(times, place, step_h=1.0)
     bright = "No cloud in the whole year: the brightest sky the place can have. It proves nothing about survival."
     cautions = [Caution("clear-sky", site.name, bright)]
     air: dict[str, FloatArray]
@@ -49,19 +49,21 @@ def clear_sky_weather(site: Site) -> Weather:
     )
 
 
-def clear_light(times: pd.DatetimeIndex, place: Place) -> dict[str, FloatArray]:
-    """ghi, dni, dhi [W/m²], means over the hours around ``times`` in parts of ten minutes; each (n_times,).
+def clear_light(times: pd.DatetimeIndex, place: Place, *, step_h: float) -> dict[str, FloatArray]:
+    """ghi, dni, dhi [W/m²], means over the steps around ``times``, worked out in six parts; each (n_times,).
 
-    An hour in which the sun rises or sets has the light of its lit parts; with the sun down at its middle all of it is
+    A step in which the sun rises or sets has the light of its lit parts; with the sun down at its middle all of it is
     diffuse.
     """
     total = dict.fromkeys(LIGHT, np.zeros(len(times)))
     turbidity = mean_turbidity(times, place)
     for part in range(PARTS):
-        shift_s = round(3600 * ((part + 0.5) / PARTS - 0.5))
-        sky = clear_sky(sun_height(times + pd.Timedelta(seconds=shift_s), 1.0 / PARTS, place), turbidity)
+        shift_s = 3600.0 * step_h * ((part + 0.5) / PARTS - 0.5)
+        sky = clear_sky(
+            sun_height(times + pd.Timedelta(milliseconds=round(1000 * shift_s)), step_h / PARTS, place), turbidity
+        )
         total = {name: total[name] + sky[name] / PARTS for name in LIGHT}
-    down = sun_height(times, 1.0, place).sine <= 0.0
+    down = sun_height(times, step_h, place).sine <= 0.0
     return {
         "ghi": total["ghi"],
         "dni": np.where(down, 0.0, total["dni"]),

@@ -65,11 +65,9 @@ def _mended_light(reading: Reading, sun: SunHeight) -> tuple[dict[str, FloatArra
         )
         cautions.append(Caution("night-light", name, text))
     if whole or split.any():
-        what = " and ".join(whole) + " are not in it" if whole else f"{int(split.sum())} lit steps lack dni or dhi"
-        text = f"Beam and diffuse light were estimated: {what}. Steep panels are less certain than flat ones."
-        cautions.append(
-            Caution("light-split", name, text.replace("dni are", "dni is").replace("dhi are not", "dhi is not"))
-        )
+        lacks = f"lacks {' and '.join(whole)}" if whole else f"lacks dni or dhi in {int(split.sum())} lit steps"
+        text = f"It {lacks}: beam and diffuse light were estimated. Steep panels are less certain than flat ones."
+        cautions.append(Caution("light-split", name, text))
     return {"ghi": ghi, "dni": dni, "dhi": dhi}, tuple(cautions)
 
 
@@ -81,11 +79,7 @@ def _not_negative(data: FloatArray) -> FloatArray:
 def _check_night(ghi: FloatArray, sun: SunHeight, *, name: str) -> int:
     """Steps with over 1 W/m² in full night; refused where they hold more light than a sound clock can leave there."""
     dark = ~sun.lit & (ghi > 0.0)
-    total = float(np.nansum(ghi))
-    if not total > 0.0:
-        wrong = "its ghi holds no light at all"
-        raise InputError(Fault(name, wrong, "a file with global light on the level in W/m2 under ghi"))
-    share = float(ghi[dark].sum()) / total
+    share = float(ghi[dark].sum()) / float(np.nansum(ghi))
     if share > NIGHT_SHARE:
         wrong = f"{100 * share:.1f} % of its light falls in steps whose sun is wholly below the horizon of the site"
         remedy = "the site's true position, the right label or stamps_in, or shift_minutes under [weather]"

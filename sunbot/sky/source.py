@@ -65,7 +65,16 @@ def place_of(reading: Reading, site: Site) -> Place:
 
 
 def audit_of(reading: Reading, site: Site) -> tuple[AuditCheck, ...]:
-    """The audit of a reading; fill codes, which the readers have taken for missing values, are named in it."""
+    """The audit of a reading, the fill codes counted that its reader took for missing values.
+
+    Raises
+    ------
+    InputError
+        The reading holds no light at all, so that there is nothing to look at.
+    """
+    if not float(np.nansum(reading.table["ghi"])) > 0.0:
+        remedy = "a file with global light on the level in W/m2 as ghi"
+        raise InputError(Fault(reading.name, "its ghi holds no light at all", remedy))
     return audit_record(
         reading.table,
         step_h=reading.step_h,
@@ -113,7 +122,7 @@ def _span(table: pd.DataFrame) -> str:
 
 def _refuse(checks: tuple[AuditCheck, ...], *, name: str) -> None:
     """An error of the fatal findings; gaps are judged by whoever fills them."""
-    fatal = [check for check in checks if check.fatal and check.code != "gaps"]
+    fatal = [check for check in checks if check.fatal and not check.passed and check.code != "gaps"]
     if fatal:
         raise InputError(Fault(f"{name}: {check.code}", check.found, check.instead) for check in fatal)
 

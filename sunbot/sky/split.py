@@ -18,7 +18,8 @@ def completed_light(
     """ghi, dni, dhi [W/m²] with the missing ones of a row worked out from the others, and which rows were split.
 
     All (n_times,), NaN where missing. A row without ghi needs both others; a row without ghi and one more stays NaN.
-    With the sun down at the middle of the step all its light is diffuse.
+    Estimated light is all diffuse with the sun down at the middle of the step; measured beam stays where some part of
+    the sun shows in the step, and counts as diffuse where none does.
 
     Source
     ------
@@ -39,8 +40,8 @@ def completed_light(
         guess = diffuse_from_ghi(ghi[rows], part)
         dni[rows], fitted = guarded_beam(ghi[rows], np.where(both, guess, dhi[rows]), part)
         dhi[rows] = np.where(both, fitted, dhi[rows])
-    down = (sun.sine <= 0.0) & ~np.isnan(ghi)
-    dni[down], dhi[down] = 0.0, ghi[down]
+    dark = ~sun.lit & ~np.isnan(ghi)
+    dni[dark], dhi[dark] = 0.0, ghi[dark]
     return ghi, dni, dhi, split & (ghi > 0.0)
 
 

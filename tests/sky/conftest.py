@@ -49,7 +49,7 @@ def invented_record() -> Callable[..., pd.DataFrame]:
         edges = pd.date_range(start, end, freq=step, tz="UTC", inclusive="left", unit="s")
         times = (edges + pd.Timedelta(step) / 2).as_unit("s")
         place = Place(site.latitude, site.longitude, site.altitude_m, site.time_zone)
-        clear = pd.DataFrame(clear_light(times, place), index=times)
+        clear = pd.DataFrame(clear_light(times, place, step_h=pd.Timedelta(step) / pd.Timedelta("1h")), index=times)
         rng = np.random.default_rng(seed)
         day = ((times.as_unit("s").asi8 + site.longitude * 240) // 86400).astype(int)
         cloud = rng.uniform(0.0, 1.0, day.max() - day.min() + 1)[day - day.min()]
