@@ -6,6 +6,7 @@ from pathlib import Path
 
 from ..errors import Fault, InputError
 from ..inputs.site import Site, WeatherSource
+from ..types import Place
 from .own_csv import read_own_csv
 from .readings import Reading
 from .typical import read_epw, read_tmy2, read_tmy3
@@ -28,7 +29,7 @@ def read_weather_file(site: Site) -> Reading:
     path, name = _find(site)
     reading = _read(path, name=name, source=source, time_zone=site.time_zone)
     if reading.header is not None and not source.elsewhere:
-        _check_place(reading, site)
+        _check_place(reading.header, site, name=name)
     return reading
 
 
@@ -91,11 +92,8 @@ def _read(path: Path, *, name: str, source: WeatherSource, time_zone: str) -> Re
     return readers[kind](path, name=name, time_zone=time_zone, shift_s=shift_s)
 
 
-def _check_place(reading: Reading, site: Site) -> None:
+def _check_place(there: Place, site: Site, *, name: str) -> None:
     """Refuse a file whose header names a place too far from the site."""
-    there = reading.header
-    if there is None:
-        return
     east = abs((there.longitude - site.longitude + 180.0) % 360.0 - 180.0)
     away_deg = max(abs(there.latitude - site.latitude), east)
     away_m = abs(there.altitude_m - site.altitude_m)
@@ -109,4 +107,4 @@ def _check_place(reading: Reading, site: Site) -> None:
     remedy = (
         "the site's true position, a file of this place, or elsewhere = true under [weather] to use it all the same"
     )
-    raise InputError(Fault(reading.name, wrong, remedy))
+    raise InputError(Fault(name, wrong, remedy))

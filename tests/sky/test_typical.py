@@ -29,13 +29,12 @@ def epw_of(tmp_path: Path) -> Callable[..., str]:
     """Write a table of middles as EPW on the clock ``offset_h``; months of a typical year mix source years."""
 
     def write(table: pd.DataFrame, *, offset_h: float = 1.0, location: str | None = None, mix: bool = True) -> str:
-        end = table.index + pd.Timedelta(hours=offset_h) + pd.Timedelta("30min")
         place = location or f"LOCATION,Invented,-,-,own,000000,47.3,8.1,{offset_h},540"
-        before = end - pd.Timedelta("1s")
+        middles = table.index + pd.Timedelta(hours=offset_h)
         rows = [
             f"{YEARS[b.month - 1] if mix else b.year},{b.month},{b.day},{b.hour + 1},60,?,{r.temp_air},5,80,95000,"
             f"0,0,300,{r.ghi},{r.dni},{r.dhi},0,0,0,0,180,{r.wind_speed}" + ",0" * 13
-            for b, r in zip(before, table.itertuples(), strict=True)
+            for b, r in zip(middles, table.itertuples(), strict=True)
         ]
         (tmp_path / "year.epw").write_text("\n".join([place, *HEAD, *rows]) + "\n")
         return "year.epw"
@@ -97,7 +96,7 @@ def test_a_typical_year_says_that_it_is_one(site_of, year, epw_of):
 
 
 def test_leap_days_leave_no_hole(site_of, invented_record, epw_of):
-    """A leap year in a file of 365 days and one hour more or less would shift every later day; it has no hole."""
+    """One leap year keeps its 29 February as a record; without it, it is a typical year of 365 days."""
     leap = invented_record(site_of(), "2003-12-31T23:00", "2004-12-31T23:00")
     record = weather_for(site_of(file=epw_of(leap, mix=False)))
     assert record.kind == "record"
@@ -116,6 +115,14 @@ def test_an_epw_of_many_years_is_a_record(site_of, invented_record, epw_of):
     assert weather.kind == "record"
     assert weather.n_years == 2
     assert weather.times[0] == pd.Timestamp("2003-12-31T23:30Z")
+
+
+def test_two_records_an_hour_are_half_hours(site_of, invented_record, epw_of):
+    """Rows that share an hour follow each other within it."""
+    fine = invented_record(site_of(), "2000-12-31T23:00", "2001-12-31T23:00", step="30min")
+    reading = reading_for(site_of(file=epw_of(fine)))
+    assert reading.step_h == 0.5
+    pd.testing.assert_frame_equal(reading.table, fine, check_freq=False)
 
 
 def test_fill_codes_and_short_gaps_are_filled_and_said(site_of, year, epw_of):
