@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any, TypeVar
 import click
 
 from . import __version__
-from .errors import Fault, InputError
+from .errors import InputError
 
 if TYPE_CHECKING:
     from .inputs import Robot, Site
@@ -105,17 +105,51 @@ def check(
 
 @cli.command()
 @click.argument("folder", type=click.Path(path_type=Path))
-@click.option("--example", metavar="NAME", help="Copy this example.")
-def new(folder: Path, example: str | None) -> None:
-    """Start FOLDER with a commented site and robot file."""
-    from .report import starter
+@click.option("--example", metavar="NAME", help="Copy this example instead.")
+@click.option("--lat", "latitude", type=click.FloatRange(-90, 90), help="Degrees, north positive.")
+@click.option("--lon", "longitude", type=click.FloatRange(-180, 180), help="Degrees, east positive.")
+@click.option("--name", help="What people call the place.")
+@click.option("--time-zone", metavar="ZONE", help="IANA name; left out, a fixed offset from the longitude.")
+@click.option("--altitude-m", type=float, help="Above the sea; left out, from a coarse map.")
+@click.option("--from-weather", metavar="FILE", help="Take the climate from this weather file.")
+def new(folder: Path, example: str | None, **place: Any) -> None:
+    """Start FOLDER with a commented site and robot file, for a place on land or from an example."""
+    from .report import starter, starts
 
-    if example is None:
-        raise InputError(
-            Fault("sunbot new", "no start is named", f"--example and one of {', '.join(starter.example_names())}")
-        )
-    for path in starter.copy_example(example, folder):
+    if example is not None:
+        written = starter.copy_example(example, folder)
+    else:
+        written = starter.write_files(folder, starts.files_of(starts.Start(**place), notes=_note))
+    for path in written:
         click.echo(f"wrote {path}")
+    click.echo(f"next: sunbot check {folder / 'robot.toml'}")
+
+
+@cli.command()
+@click.argument("site", type=ROBOT_OR_SITE_FILE)
+@weather_options
+@output_options
+@click.pass_context
+def sky(
+    ctx: click.Context,
+    site: Path,
+    weather: str | None,
+    years: int,
+    seed: int,
+    as_json: bool,
+    csv: Path | None,
+    plot: Path | None,
+) -> None:
+    """What does the place of SITE offer, and is the weather file believable?"""
+    from . import report, studies
+    from .inputs import load_site
+
+    outputs = report.Outputs(as_json, csv, plot)
+    outputs.ready()
+    place = load_site(site)
+    result = studies.survey(place if weather is None else _with_weather(place, weather), years=years, seed=seed)
+    click.echo(report.deliver_sky(result, outputs, notes=_note), nl=False)
+    ctx.exit(0 if result.met else TARGET_NOT_MET)
 
 
 @cli.command()

@@ -72,6 +72,7 @@ class Climate(Part):
     year_to_year: TwelveShares | None = key(
         None, "standard deviation of a month's mean light over its long-term mean; one value or twelve", example=0.15
     )
+    coarse: Flag = key(False, "true: read off a coarse table of the world, a first look; every answer says so")
 
     def problems(self) -> Iterator[Problem]:
         yield from checks.climate(self)

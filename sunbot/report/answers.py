@@ -11,7 +11,7 @@ from .delivery import Outputs, deliver
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-    from ..studies import CheckResult
+    from ..studies import CheckResult, SurveyResult
 
 
 def deliver_check(result: CheckResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:
@@ -29,3 +29,20 @@ def deliver_check(result: CheckResult, outputs: Outputs, *, notes: Callable[[str
         return check_figure(answer)
 
     return deliver(result, outputs, text=check_text, csv=csv, figure=figure, notes=notes)
+
+
+def deliver_sky(result: SurveyResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:
+    """Write what was asked for; return what belongs on stdout."""
+    from .sky_text import sky_text
+
+    def csv(answer: SurveyResult, path: Path) -> None:
+        from .tables import weather_table, write_table
+
+        write_table(weather_table(answer.weather), path)
+
+    def figure(answer: SurveyResult) -> Figure:
+        from .sky_plots import sky_figure
+
+        return sky_figure(answer)
+
+    return deliver(result, outputs, text=sky_text, csv=csv, figure=figure, notes=notes)

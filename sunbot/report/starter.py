@@ -155,11 +155,16 @@ def starter_files(
     }
     if climate is not None:
         monthly = climate.model_dump(exclude_none=True)
-        said["climate"] = {name: values[0] if len(set(values)) == 1 else values for name, values in monthly.items()}
+        said["climate"] = {key: _shortest(value) for key, value in monthly.items()}
     notes = ["#", *_sentences(provenance)] if provenance else []
     site = [*_sentences(f"Where the robot works. {_HOW_TO_READ}"), *notes, "", *_table(Site, said)]
     robot = [*_sentences(f"An invented robot: put in yours. {_HOW_TO_READ}"), "", *_table(Robot, STARTER_ROBOT)]
     return {SITE: "\n".join(site) + "\n", ROBOT: "\n".join(robot) + "\n"}
+
+
+def _shortest(value: Any) -> Any:
+    """Twelve equal values as the one that stands for all."""
+    return value[0] if isinstance(value, tuple) and len(set(value)) == 1 else value
 
 
 _HOW_TO_READ = "A key behind a # shows its default, or an example where it has none; remove the # to set it."

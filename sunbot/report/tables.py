@@ -10,6 +10,7 @@ from ..writing import write_whole
 if TYPE_CHECKING:
     import pandas as pd
 
+    from ..sky import Weather
     from ..studies.checking import CheckResult
 
 TRACE_COLUMNS = (
@@ -49,6 +50,13 @@ def trace_table(result: CheckResult) -> pd.DataFrame:
     for name in TRACE_COLUMNS[4:]:
         columns[name] = getattr(trace, name).T.ravel()[there][order]
     return pd.DataFrame(columns)
+
+
+def weather_table(weather: Weather) -> pd.DataFrame:
+    """The weather as sunbot uses it: the UTC middle of each step, light [W/m2], air [degC], wind [m/s]."""
+    table = weather.table.reset_index(drop=True)
+    table.insert(0, "time", weather.times.strftime("%Y-%m-%dT%H:%M:%SZ"))
+    return table
 
 
 def write_table(table: pd.DataFrame, path: Path) -> None:

@@ -45,7 +45,8 @@ def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
     cold_c = np.array([_mean(air_c, chain, robot, month) for month in months])
     hungry = load_w >= load_w.max() * (1.0 - 1e-6)
     at = int(np.flatnonzero(hungry)[np.argmin(cold_c[hungry])])
-    week_w = darkest_week_w(supply.offer_w[:, 0, :].mean(axis=-1), chain.weather.step_h)
+    offer_w = supply.offer_w[:, 0, :].mean(axis=-1)
+    week_w = darkest_week_w(offer_w[lanes.row], lanes.step_h, ring=robot.deployment is None)
     temp_c = float(cold_c[at]) + robot.battery.box_rise_c
 
     def hours(age: Age, harvest_w: float) -> float | None:
@@ -65,11 +66,27 @@ def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
     )
 
 
-def darkest_week_w(offer_w: FloatArray, step_h: float) -> float:
-    """Mean harvest of the darkest 7 days in a row [W]; the weather is a ring."""
-    steps = min(round(WEEK_H / step_h), offer_w.size)
-    total = np.concatenate(([0.0], np.cumsum(np.concatenate((offer_w, offer_w[:steps])))))
-    return max(0.0, float((total[steps:] - total[:-steps]).min()) / steps)
+def darkest_week_w(offer_w: FloatArray, step_h: FloatArray, *, ring: bool) -> float:
+    """Mean harvest of the darkest 7 days in a row [W].
+
+    Parameters
+    ----------
+    offer_w, step_h : (n_steps, n_years)
+        Harvest offered in the steps of the energy years, and their length [h], 0 where a year has no such step.
+    ring : bool
+        The years follow on each other, the first on the last; else no week runs over the end of one.
+    """
+    years = [(watts[hours > 0], hours[hours > 0]) for watts, hours in zip(offer_w.T, step_h.T, strict=True)]
+    if ring:
+        years = [tuple(np.concatenate(parts) for parts in zip(*years, strict=True))]
+    return max(0.0, min(_least_mean_w(watts, hours, ring=ring) for watts, hours in years))
+
+
+def _least_mean_w(watts: FloatArray, hours: FloatArray, *, ring: bool) -> float:
+    steps = min(round(WEEK_H / float(hours[0])), watts.size)
+    run_on = watts[: steps - 1] if ring else watts[:0]
+    total = np.concatenate(([0.0], np.cumsum(np.concatenate((watts, run_on)))))
+    return float((total[steps:] - total[:-steps]).min()) / steps
 
 
 def _mean(values: FloatArray, chain: Chain, robot: Robot, month: int) -> float:

@@ -18,6 +18,9 @@ from .verdict import Verdict
 BLOCKED_NOTED = 0.01
 """Share of the year's harvest offered to a battery too cold or too warm to be charged that is worth a word."""
 
+CHARGING_OVER_REST = 1.08
+"""Common practice: a pack on charge stands at most so much above its rest voltage when full."""
+
 SAFETY = {
     "lithium": "Lithium cells need a protection circuit, a fuse at the pack, and no charging below freezing: charging "
     "a cold cell plates metal inside it and can start a fire later. Keep them from crushing, water and heat.",
@@ -38,9 +41,29 @@ def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
     )
 
 
-def check_cautions(chain: Chain, robot: Robot, balance: Balance, verdict: Verdict) -> tuple[Caution, ...]:
-    """All cautions of a check: the standing ones and those of its outcome."""
-    return (*_outcome(robot, balance, verdict), *standing_cautions(chain, robot))
+def check_cautions(
+    chain: Chain, robot: Robot, balance: Balance, verdict: Verdict, *, survival_coarse: float
+) -> tuple[Caution, ...]:
+    """All cautions of a check: those of its outcome and the standing ones.
+
+    ``survival_coarse`` : share alive with 0.15 less light, told where the climate is read off the world table.
+    """
+    coarse = robot.site.climate is not None and robot.site.climate.coarse and chain.weather.kind == "generated"
+    return (
+        *_outcome(robot, balance, verdict),
+        *([_coarse_climate(survival_coarse)] if coarse else []),
+        *standing_cautions(chain, robot),
+    )
+
+
+def _coarse_climate(survival: float) -> Caution:
+    return Caution(
+        "coarse-climate",
+        "climate",
+        "The light is read off a coarse table of the world: most months lie within 15 %, coasts and mountains further "
+        f"off. With 15 % less light the robot is alive in {survival:.0%} of years. Take a record of the place before "
+        "you decide.",
+    )
 
 
 def _outcome(robot: Robot, balance: Balance, verdict: Verdict) -> Iterator[Caution]:
@@ -78,7 +101,7 @@ def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
     return rail_cautions(
         robot,
         lowest_v=cutoff_v,
-        highest_v=pack.cells * pack.kind.top_v,
+        highest_v=min(pack.cells * pack.kind.top_v, CHARGING_OVER_REST * float(pack.curve.rest_v[-1])),
         resistance_ohm=resistance_ohm(pack, robot.battery.capacity_ah, temp_c=max(coldest_c, -20.0)),
         soc_nodes=pack.curve.soc,
         rest_v_nodes=pack.curve.rest_v,

@@ -12,7 +12,7 @@ from ..calendar import Lanes, energy_years, standard_clock
 from ..demand import Demand, demand
 from ..harvest import HarvestYield, Supply, follows_battery, harvest_yield, supply
 from ..inputs.robot import Robot
-from ..light import Light, Sun, lights_on, sun_over
+from ..light import Light, Sun, lights_on, parked_otherwise, sun_over
 from ..sky import Weather
 from ..storage import Balance, Designs, Pack, as_filed, balance, battery_voltages, pack_of
 from ..types import FloatArray, IntArray
@@ -21,6 +21,7 @@ Age = Literal["worn", "new"]
 Keep = Literal["verdict", "months", "trace"]
 T = TypeVar("T")
 
+PARKED = ("random", "mean", "worst")
 N_VOLTS = 5
 """Battery voltages at which supply and demand are tabulated where they follow the battery."""
 
@@ -31,6 +32,10 @@ class _Kept:
     def __init__(self, most: int) -> None:
         self._most = most
         self._kept: OrderedDict[Hashable, Any] = OrderedDict()
+
+    def find(self, key: Hashable) -> Any:
+        """What is kept under ``key``, or None."""
+        return self._kept.get(key)
 
     def get(self, key: Hashable, make: Callable[[], T]) -> T:
         if key in self._kept:
@@ -59,6 +64,7 @@ class Chain:
         self._supplies = _Kept(4)
         self._demands = _Kept(4)
         self._lanes = _Kept(4)
+        self._first_months = _Kept(64)
 
     @property
     def reference(self) -> bool:
@@ -72,8 +78,16 @@ class Chain:
         return self._sun
 
     def lights(self, robot: Robot) -> tuple[Light, ...]:
-        """Light on each panel of ``robot``."""
-        return self._lights.get(_light_key(robot), lambda: lights_on(robot, self.weather, self.sun(), seed=self.seed))
+        """Light on each panel of ``robot``; where it stands when parked only changes the weights of its headings."""
+
+        def make() -> tuple[Light, ...]:
+            for parked in PARKED:
+                other = self._lights.find(_light_key(robot.model_copy(update={"parked": parked})))
+                if other is not None:
+                    return parked_otherwise(other, robot, self.weather, seed=self.seed)
+            return lights_on(robot, self.weather, self.sun(), seed=self.seed)
+
+        return self._lights.get(_light_key(robot), make)
 
     def supply(self, robot: Robot, *, watts: FloatArray | None = None, accounts: bool = True) -> Supply:
         """What the panels offer at the battery, for the robot's own wattage or for each of ``watts``."""
@@ -108,15 +122,17 @@ class Chain:
         """The month energy years start with: the one after that of the largest surplus of the robot as filed."""
         if robot.deployment is not None:
             return robot.deployment.first[0]
+        key = (_light_key(robot), robot.panels, robot.controller, robot.battery, robot.rails, robot.loads)
+        return self._first_months.get(key, lambda: self._month_after_plenty(robot))
+
+    def _month_after_plenty(self, robot: Robot) -> int:
         offer_w = self.supply(robot).offer_w[:, 0, :].mean(axis=-1)
         asked = self.demand(robot)
         asked_w = asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1)
         surplus_w = offer_w - asked_w[self.weather.row]
-        by_month = [
-            surplus_w[self.months == month].mean() if (self.months == month).any() else -np.inf
-            for month in range(1, 13)
-        ]
-        return (int(np.argmax(by_month)) + 1) % 12 + 1
+        steps = np.bincount(self.months, minlength=13)[1:]
+        by_month = np.bincount(self.months, weights=surplus_w, minlength=13)[1:] / np.maximum(steps, 1)
+        return (int(np.argmax(np.where(steps > 0, by_month, -np.inf))) + 1) % 12 + 1
 
     def lanes(self, robot: Robot) -> Lanes:
         """Energy years (or deployments) of ``robot`` as filed, side by side."""

@@ -14,12 +14,12 @@ from ..calendar import Lanes
 from ..harvest.temperatures import mean_cell_temp_c
 from ..inputs.robot import Robot
 from ..sky import Weather, weather_for
-from ..storage import Balance, Designs, Trace, as_filed
+from ..storage import Balance, Trace, as_filed
 from ..types import Caution, FloatArray
 from .autonomy import Autonomy, autonomy_of
 from .cautions import check_cautions
 from .chain import Chain
-from .designs import side_by_side
+from .designs import repeated, side_by_side
 from .flows import EnergyYear, Step, energy_year, light_to_panel
 from .inputs_used import InputsUsed, inputs_used
 from .months import month_table
@@ -29,6 +29,8 @@ from .verdict import Verdict, verdict_on
 
 DIM_LIGHT_X = 0.9
 """The light of the second opinion: everything 10 % darker."""
+COARSE_LIGHT_X = 0.85
+"""A climate read off the world table may be so much too bright."""
 
 
 @dataclass(frozen=True)
@@ -153,7 +155,7 @@ def check(
 def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:
     """`check` on a chain that may already hold the stages' results."""
     lanes = chain.lanes(robot)
-    balance, dim = _run(chain, robot, trace=trace)
+    balance, dim, dimmer = _run(chain, robot, trace=trace)
     verdict = verdict_on(balance, robot.target)
     plane_w_m2 = (chain.lights(robot)[0].plane_w_m2 * chain.lights(robot)[0].weight).sum(axis=1)
     months = month_table(balance, lanes, plane_w_m2)
@@ -174,7 +176,7 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
         unserved_share=_unserved_share(balance),
         energy=energy_year(balance.ledger),
         light_steps=light_to_panel(robot, chain.lights(robot), chain.harvest_yield(robot)),
-        cautions=check_cautions(chain, robot, balance, verdict),
+        cautions=check_cautions(chain, robot, balance, verdict, survival_coarse=dimmer),
         lanes=lanes,
         balance=balance,
         trace=balance.trace,
@@ -183,19 +185,17 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
     )
 
 
-def _run(chain: Chain, robot: Robot, *, trace: bool) -> tuple[Balance, float]:
-    """The robot as filed, and its survival under dimmer light: side by side where no trajectory is kept."""
+def _run(chain: Chain, robot: Robot, *, trace: bool) -> tuple[Balance, float, float]:
+    """The robot as filed, and its survival in light 10 and 15 % dimmer, side by side where no trajectory is kept."""
     filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
+    dim = replace(repeated(filed, 2), light_x=np.array([DIM_LIGHT_X, COARSE_LIGHT_X]))
     if trace:
         balance = chain.run(robot, filed, keep="trace")
-        dim = verdict_on(chain.run(robot, _dimmed(filed), keep="verdict"), robot.target)
-        return balance, float(dim.survival[0])
-    both = chain.run(robot, side_by_side(filed, _dimmed(filed)), keep="months")
-    return both, float(verdict_on(both, robot.target).survival[1])
-
-
-def _dimmed(designs: Designs) -> Designs:
-    return replace(designs, light_x=designs.light_x * DIM_LIGHT_X)
+        survival = verdict_on(chain.run(robot, dim, keep="verdict"), robot.target).survival
+        return balance, float(survival[0]), float(survival[1])
+    balance = chain.run(robot, side_by_side(filed, dim), keep="months")
+    survival = verdict_on(balance, robot.target).survival
+    return balance, float(survival[1]), float(survival[2])
 
 
 def _survival_worst_parked(chain: Chain, robot: Robot, as_filed: float) -> float | None:

@@ -1,0 +1,24 @@
+"""Dark spells as a table on a terminal."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from ..studies.dark_spells import DarkSpell
+
+
+def spells_text(spells: Sequence[DarkSpell], *, rated_w: float | None, what: str = "harvest, Wh") -> str:
+    """The darkest spells with their dates and how often they come back."""
+    per_watt = f"{'per rated W':>13}" if rated_w else ""
+    rows = [
+        f"The darkest days in a row ({what} in all)",
+        f"  {'days':>6}{'Wh':>10}{per_watt}   {'from':12}{'comes once in':>14}   95 % interval of that level",
+    ]
+    for spell in spells:
+        share = f"{spell.wh / rated_w:>13.3g}" if rated_w else ""
+        once = "-" if spell.return_years is None else f"{spell.return_years:.0f} years"
+        interval = "" if spell.low is None or spell.high is None else f"   {spell.low:.3g} to {spell.high:.3g}"
+        rows.append(f"  {spell.days:>6}{spell.wh:>10.4g}{share}   {spell.start.isoformat():12}{once:>14}{interval}")
+    return "\n".join(rows)
