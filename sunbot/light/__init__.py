@@ -3,6 +3,21 @@
 from .carriers import Light, LightYield, Sun
 from .level import light_on_level
 from .lighting import lights_on, parked_otherwise
+from .room import room_air_c, weather_in_room
 from .sun import sun_over
+from .window_light import WindowLight, window_cautions, window_light
 
-__all__ = ["Light", "LightYield", "Sun", "light_on_level", "lights_on", "parked_otherwise", "sun_over"]
+__all__ = [
+    "Light",
+    "LightYield",
+    "Sun",
+    "WindowLight",
+    "light_on_level",
+    "lights_on",
+    "parked_otherwise",
+    "room_air_c",
+    "sun_over",
+    "weather_in_room",
+    "window_cautions",
+    "window_light",
+]

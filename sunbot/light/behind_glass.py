@@ -184,7 +184,8 @@ def _flux(robot: Robot) -> FloatArray:
     """Diffuse flux through the window per area of the opening, over isotropic, brightening and ground light; (3,)."""
     seen = _directions(ALL_AROUND, _OUT, robot=robot)
     nothing = np.zeros_like(seen.across)
-    return _parts(robot, seen, onto=seen.cos_at(_OUT)[None], level=seen.cos_of_level(_OUT)[None], own_deg=nothing)[0]
+    onto, level = seen.cos_at(_OUT)[None], seen.cos_of_level(_OUT)[None]
+    return np.asarray(_parts(robot, seen, onto=onto, level=level, own_deg=nothing)[0])
 
 
 def _directions(opening: Opening, face: FloatArray, *, robot: Robot) -> Directions:

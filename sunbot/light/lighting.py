@@ -16,14 +16,14 @@ from .carriers import Light, LightYield, Sun
 from .glass import dirt_pass, snow_pass
 from .headings import N_HEADINGS, heading_matters, heading_weight, noses
 from .plane import SkyParts, sky_parts
-from .room import lamp_w_m2, weather_in_room
+from .room import lamp_w_m2
 from .view import Factors, Run, View, light_through, open_air, runs_of, under_horizon
 
 _ALL_ALIKE: FloatArray = np.ones((1, 1))
 
 
 @dataclass(frozen=True, eq=False)
-class _Outside:
+class Outside:
     """What all panels share: the open sky, the sky over the ground as the horizon leaves it, runs of steps, months."""
 
     open: SkyParts
@@ -49,10 +49,10 @@ def lights_on(robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1) -> tup
     InputError
         The robot lives behind a window and does not stand still there.
     """
-    outside = _outside(robot.site, weather, sun)
+    outside = outside_of(robot.site, weather, sun)
     views = _views(robot, weather, sun)
-    at_panel = weather_in_room(weather, robot.window)
-    kept = [_kept(panel, at_panel, outside.month) for panel in robot.panels]
+    snowed = weather.snow_covered if robot.window is None else None
+    kept = [(_clean(panel, weather, outside.month), snow_pass(panel.tilt_deg, snowed)) for panel in robot.panels]
     planes = [_filled(outside.left, view.plane, outside.runs) for view in views]
     cells = [
         _filled(outside.left, view.glass, outside.runs, times=dirt * snow)
@@ -75,7 +75,7 @@ def parked_otherwise(lights: tuple[Light, ...], robot: Robot, weather: Weather, 
     return tuple(replace(light, weight=weight) for light, weight in zip(lights, weights, strict=True))
 
 
-def _outside(site: Site, weather: Weather, sun: Sun) -> _Outside:
+def outside_of(site: Site, weather: Weather, sun: Sun) -> Outside:
     """The sky over the site, worked out once for all panels and headings."""
     month = standard_clock(weather.ref_times, weather.place.time_zone).month
     row = weather.row
@@ -87,7 +87,7 @@ def _outside(site: Site, weather: Weather, sun: Sun) -> _Outside:
         sun=Sun(**{name: values[row] for name, values in vars(sun).items()}),
         albedo=np.asarray(site.albedo)[month - 1][row],
     )
-    return _Outside(sky, under_horizon(sky, site, sun=sun, row=row), runs_of(row), month)
+    return Outside(sky, under_horizon(sky, site, sun=sun, row=row), runs_of(row), month)
 
 
 def _views(robot: Robot, weather: Weather, sun: Sun) -> list[View]:
@@ -102,9 +102,9 @@ def _views(robot: Robot, weather: Weather, sun: Sun) -> list[View]:
     ]
 
 
-def _kept(panel: Panel, weather: Weather, month: IntArray) -> tuple[FloatArray, FloatArray | float]:
-    """Shares of light that pass dirt, and snow."""
-    return dirt_pass(panel.dirt_loss, month)[weather.row], snow_pass(panel.tilt_deg, weather.snow_covered)
+def _clean(panel: Panel, weather: Weather, month: IntArray) -> FloatArray:
+    """Share of light that passes the dirt, step by step."""
+    return dirt_pass(panel.dirt_loss, month)[weather.row]
 
 
 def _filled(sky: SkyParts, factors: Factors, runs: list[Run], *, times: FloatArray | None = None) -> FloatArray:
@@ -135,7 +135,7 @@ def _weights(
 
 def _yearly(
     weather: Weather,
-    outside: _Outside,
+    outside: Outside,
     *,
     view: View,
     weight: FloatArray,

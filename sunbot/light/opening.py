@@ -1,4 +1,4 @@
-"""A rectangular opening in a wall as a point in the room sees it: directions that pass, and the share of a patch the sun lights.
+"""A rectangular opening in a wall as a point in the room sees it: directions that pass, and how much the sun lights.
 
 Vectors are in the frame of the wall: right (seen looking out), up, out.
 """
