@@ -39,7 +39,7 @@ def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
     lanes, supply, asked = chain.lanes(robot), chain.supply(robot), chain.demand(robot)
     rows = chain.weather.row
     essential_w = asked.essential.total_w.mean(axis=-1)[rows] + supply.own_use_w
-    air_c = chain.weather.table["temp_air"].to_numpy()
+    air_c = chain.weather_at(robot).table["temp_air"].to_numpy()
     months = np.array([month for month in range(1, 13) if (lanes.month == month).any()])
     load_w = np.array([_mean(essential_w, chain, robot, month) for month in months])
     cold_c = np.array([_mean(air_c, chain, robot, month) for month in months])

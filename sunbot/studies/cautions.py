@@ -9,6 +9,7 @@ import numpy as np
 from ..demand import rail_cautions
 from ..harvest import supply_cautions
 from ..inputs.robot import Robot
+from ..light import window_cautions
 from ..storage import Balance, box_temp_c, resistance_ohm
 from ..types import Caution
 from .chain import Chain
@@ -35,7 +36,8 @@ def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
     """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery."""
     return (
         *chain.weather.cautions,
-        *supply_cautions(robot, chain.weather, lights=chain.lights(robot), supply=chain.supply(robot)),
+        *window_cautions(robot, chain.lights(robot)),
+        *supply_cautions(robot, chain.weather_at(robot), lights=chain.lights(robot), supply=chain.supply(robot)),
         *_rails(chain, robot),
         *_battery(chain, robot),
     )
@@ -95,7 +97,7 @@ def _outcome(robot: Robot, balance: Balance, verdict: Verdict) -> Iterator[Cauti
 
 
 def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
-    pack, air_c = chain.pack(robot), chain.weather.table["temp_air"].to_numpy()
+    pack, air_c = chain.pack(robot), chain.weather_at(robot).table["temp_air"].to_numpy()
     coldest_c, hottest_c = (float(extreme) + robot.battery.box_rise_c for extreme in (air_c.min(), air_c.max()))
     cutoff_v = float(np.interp(pack.cutoff_soc, pack.curve.soc, pack.curve.rest_v))
     return rail_cautions(
@@ -110,7 +112,7 @@ def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
 
 
 def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
-    battery, weather = robot.battery, chain.weather
+    battery, weather = robot.battery, chain.weather_at(robot)
     pack = chain.pack(robot)
     box_c = box_temp_c(
         weather.table["temp_air"].to_numpy(), step_h=weather.step_h, lag_h=pack.box_lag_h, rise_c=pack.box_rise_c

@@ -12,7 +12,7 @@ from ..calendar import Lanes, energy_years, standard_clock
 from ..demand import Demand, demand
 from ..harvest import HarvestYield, Supply, follows_battery, harvest_yield, supply
 from ..inputs.robot import Robot
-from ..light import Light, Sun, lights_on, parked_otherwise, sun_over
+from ..light import Light, Sun, lights_on, parked_otherwise, sun_over, weather_in_room
 from ..sky import Weather
 from ..storage import Balance, Designs, Pack, as_filed, balance, battery_voltages, pack_of
 from ..types import FloatArray, IntArray
@@ -65,6 +65,7 @@ class Chain:
         self._demands = _Kept(4)
         self._lanes = _Kept(4)
         self._first_months = _Kept(64)
+        self._at_robot = _Kept(2)
 
     @property
     def reference(self) -> bool:
@@ -76,6 +77,10 @@ class Chain:
         if self._sun is None:
             self._sun = sun_over(self.weather)
         return self._sun
+
+    def weather_at(self, robot: Robot) -> Weather:
+        """The weather as cells and battery of ``robot`` feel it: behind a window the room's air, without wind."""
+        return self._at_robot.get(robot.window, lambda: weather_in_room(self.weather, robot.window))
 
     def lights(self, robot: Robot) -> tuple[Light, ...]:
         """Light on each panel of ``robot``; where it stands when parked only changes the weights of its headings."""
@@ -96,12 +101,14 @@ class Chain:
         key = (_light_key(robot), robot.panels, robot.controller, tuple(sizes), tuple(volts), accounts)
         return self._supplies.get(
             key,
-            lambda: supply(self.lights(robot), self.weather, robot, watts=sizes, battery_v=volts, accounts=accounts),
+            lambda: supply(
+                self.lights(robot), self.weather_at(robot), robot, watts=sizes, battery_v=volts, accounts=accounts
+            ),
         )
 
     def harvest_yield(self, robot: Robot) -> HarvestYield:
         """What the cells give in a year after each step."""
-        return harvest_yield(self.lights(robot), self.weather, robot, self.supply(robot))
+        return harvest_yield(self.lights(robot), self.weather_at(robot), robot, self.supply(robot))
 
     def demand(self, robot: Robot) -> Demand:
         """What the loads ask for at the battery."""
@@ -174,7 +181,7 @@ class Chain:
             self.pack(robot, age=age),
             self.lanes(robot) if lanes is None else lanes,
             as_filed(robot, n_levels=len(asked.level_loads)) if designs is None else designs,
-            air_temp_c=self.weather.table["temp_air"].to_numpy(),
+            air_temp_c=self.weather_at(robot).table["temp_air"].to_numpy(),
             row=self.weather.row,
             keep=keep,
         )
@@ -187,4 +194,6 @@ def _light_key(robot: Robot) -> Hashable:
         (panel.tilt_deg, panel.azimuth_deg, panel.dirt_loss, panel.obstructions, panel.bypass_groups)
         for panel in robot.panels
     )
-    return (robot.site, robot.heading, robot.heading_deg, robot.parked, robot.window, moving, mounts)
+    # behind a window the size of a panel decides how much of it the sun reaches
+    sizes = () if robot.window is None else tuple(panel.total_watts for panel in robot.panels)
+    return (robot.site, robot.heading, robot.heading_deg, robot.parked, robot.window, moving, mounts, sizes)

@@ -181,7 +181,7 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
         balance=balance,
         trace=balance.trace,
         plane_w_m2=plane_w_m2 if trace else None,
-        cell_temp_c=mean_cell_temp_c(chain.lights(robot)[0], chain.weather, robot) if trace else None,
+        cell_temp_c=mean_cell_temp_c(chain.lights(robot)[0], chain.weather_at(robot), robot) if trace else None,
     )
 
 
