@@ -14,7 +14,7 @@ import numpy as np
 import pandas as pd
 
 from ..errors import Fault, InputError
-from ..types import FloatArray, IntArray
+from ..types import BoolArray, FloatArray, IntArray
 from .readings import COLUMNS, Reading, numbers_of, on_grid, step_of, without_codes
 
 Label = Literal["start", "middle", "end"]
@@ -92,8 +92,12 @@ def _utc_seconds(stamps: pd.Series, *, name: str, stamps_in: str | None) -> IntA
         line = int(np.argmax(stamps.isna().to_numpy())) + 2
         raise InputError(Fault(f"{where}: line {line}", "it is empty", "a time stamp in each row"))
     try:
-        times = pd.to_datetime(stamps, format="ISO8601")
-    except (ValueError, pd.errors.OutOfBoundsDatetime):
+        with warnings.catch_warnings():
+            warnings.simplefilter("error", FutureWarning)  # what pandas 2 says of mixed offsets, pandas 3 raises
+            times = pd.to_datetime(stamps, format="ISO8601")
+        if times.dt.tz is not None and not _zoned(stamps).all():
+            times = _mixed_offsets(stamps, where=where)
+    except (ValueError, FutureWarning, pd.errors.OutOfBoundsDatetime):
         times = _mixed_offsets(stamps, where=where)
     index = pd.DatetimeIndex(times)
     if index.tz is not None and stamps_in is not None:
@@ -107,6 +111,11 @@ def _utc_seconds(stamps: pd.Series, *, name: str, stamps_in: str | None) -> IntA
     return np.asarray(index.tz_convert("UTC").round("s").as_unit("s").asi8, dtype=np.int64)
 
 
+def _zoned(stamps: pd.Series) -> BoolArray:
+    """Which stamps carry an offset."""
+    return np.asarray(stamps.str.contains(_ZONED, regex=True).to_numpy(dtype=bool))
+
+
 def _mixed_offsets(stamps: pd.Series, *, where: str) -> pd.Series:
     """Stamps whose offsets differ (daylight saving) as UTC; the line of the first that cannot be read otherwise."""
     times = pd.to_datetime(stamps, format="ISO8601", utc=True, errors="coerce")
@@ -115,7 +124,7 @@ def _mixed_offsets(stamps: pd.Series, *, where: str) -> pd.Series:
     if bad.any():
         row = int(np.argmax(bad))
         raise InputError(Fault(f"{where}: line {row + 2}", f"{stamps.iloc[row]!r} is no time stamp", shape))
-    naive = ~stamps.str.contains(_ZONED, regex=True).to_numpy(dtype=bool)
+    naive = ~_zoned(stamps)
     if naive.any():
         row = int(np.argmax(naive))
         wrong = f"{stamps.iloc[row]} carries no offset, others do"
