@@ -30,7 +30,8 @@ class ReferenceSky:
     level_w_m2 : extraterrestrial light on the level. extra_w_m2 : on a plane that faces the sun.
     clear_w_m2, clear_beam_w_m2 : light on the level, and beam, under a clean clear sky.
     lit : share of the hour with the sun's centre above the level horizon, refraction left out.
-    cosine : of the apparent zenith angle, mean over the lit part; 1 where there is none. airmass : at that angle.
+    cosine : of the apparent zenith angle at the middle, or mean over the lit part where the sun rises or sets; 1 where
+        there is none. airmass : at that angle.
     sun_up : the sun's centre is above the horizon at the middle.
     """
 
@@ -66,9 +67,7 @@ def reference_sky(place: Place) -> ReferenceSky:
     times = generated_times(1, place.time_zone)
     true_cos, middle = _cosine_in_parts(times, place)
     lit = true_cos > 0.0
-    elevation = np.degrees(np.arcsin(np.clip(true_cos[lit], 0.0, 1.0)))
-    apparent = elevation + 1.02 / 60.0 / np.tan(np.radians(elevation + 10.3 / (elevation + 5.11)))
-    zenith = 90.0 - np.minimum(apparent, 90.0)
+    zenith = _apparent_zenith_deg(true_cos[lit])
     extra = np.asarray(pvlib.irradiance.get_extra_radiation(np.repeat(np.arange(1, 366), 24)), dtype=np.float64)
     extra_lit = np.broadcast_to(extra[:, None], lit.shape)[lit]
     pressure = pvlib.atmosphere.alt2pres(place.altitude_m)
@@ -82,6 +81,9 @@ def reference_sky(place: Place) -> ReferenceSky:
 
     share = mean(np.ones(extra_lit.size))
     cosine = np.where(share > 0.0, mean(np.cos(np.radians(zenith))) / np.where(share > 0.0, share, 1.0), 1.0)
+    # Whoever turns beam into light on a plane takes the sun of the middle where all of the hour is lit.
+    at_middle = np.cos(np.radians(_apparent_zenith_deg(middle))).reshape(365, 24)
+    cosine = np.where(share > 1.0 - 0.5 / PARTS, at_middle, cosine)
     return ReferenceSky(
         level_w_m2=mean(extra_lit * true_cos[lit]),
         extra_w_m2=extra.reshape(365, 24),
@@ -92,6 +94,13 @@ def reference_sky(place: Place) -> ReferenceSky:
         airmass=np.asarray(pvlib.atmosphere.get_relative_airmass(np.degrees(np.arccos(cosine)))),
         sun_up=(middle > 0.0).astype(np.float64).reshape(365, 24),
     )
+
+
+def _apparent_zenith_deg(true_cosine: FloatArray) -> FloatArray:
+    """Zenith angle with refraction, from the cosine of the true one; at most that of the level horizon."""
+    elevation = np.degrees(np.arcsin(np.clip(true_cosine, 0.0, 1.0)))
+    apparent = elevation + 1.02 / 60.0 / np.tan(np.radians(elevation + 10.3 / (elevation + 5.11)))
+    return np.asarray(90.0 - np.minimum(apparent, 90.0))
 
 
 def _cosine_in_parts(times: pd.DatetimeIndex, place: Place) -> tuple[FloatArray, FloatArray]:
