@@ -22,6 +22,8 @@ from .tables import Spots, current_table, look_up, spots
 
 _THREADS = min(4, os.cpu_count() or 1)
 _HOTTEST_CELL_C = 75.0
+_BRIGHTEST = 1.6
+"""No cell gives more than so many times its name-plate: 1600 W/m2, which the tables reach too."""
 
 
 def supply(
@@ -92,11 +94,15 @@ def supply(
 def follows_battery(robot: Robot) -> bool:
     """Whether the harvest depends on the battery's voltage, so that one node would not do.
 
-    Not so for a tracker without a current limit whose hot panels clear the full battery.
+    Not so for a tracker whose hot panels clear the full battery and whose current limit is out of reach.
     """
     controller = robot.controller
-    if controller.kind != "mppt" or controller.max_charge_a is not None:
+    if controller.kind != "mppt":
         return True
+    if controller.max_charge_a is not None:
+        highest_a = _BRIGHTEST * robot.watts / battery_v(robot, 0.0)
+        if highest_a > controller.max_charge_a:
+            return True
     needed_v = battery_v(robot, 1.0) + above_battery_v(robot)
     for array in arrays_of(robot):
         hot_v = array.vmp_v + array.voc_v * array.panel.voc_pct_per_k / 100.0 * (_HOTTEST_CELL_C - 25.0)

@@ -1,6 +1,6 @@
 """W/m2 that reach the cells: weather and a panel in, `Light` per heading out."""
 
-from .carriers import Light, LightYield, Sun
+from .carriers import Light, LightYield, Sun, mean_plane_w_m2
 from .level import light_on_level
 from .lighting import lights_on, parked_otherwise
 from .room import room_air_c, weather_in_room
@@ -14,6 +14,7 @@ __all__ = [
     "WindowLight",
     "light_on_level",
     "lights_on",
+    "mean_plane_w_m2",
     "parked_otherwise",
     "room_air_c",
     "sun_over",

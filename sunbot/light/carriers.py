@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+import numpy as np
+
 from ..types import FloatArray
 
 
@@ -54,3 +56,9 @@ class Light:
     cells_w_m2: FloatArray
     weight: FloatArray
     yearly: LightYield
+
+
+def mean_plane_w_m2(light: Light) -> FloatArray:
+    """Irradiance on the plane of a panel, mean over its headings [W/m2]; (n_times,)."""
+    weight = np.broadcast_to(light.weight, light.plane_w_m2.shape)
+    return np.asarray(np.einsum("th,th->t", light.plane_w_m2, weight))

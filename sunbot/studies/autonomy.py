@@ -11,6 +11,7 @@ from ..inputs.robot import Robot
 from ..storage import autonomy_h
 from ..types import FloatArray
 from .chain import Age, Chain
+from .months import month_hours, month_sums
 
 WEEK_H = 168.0
 
@@ -40,9 +41,9 @@ def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
     rows = chain.weather.row
     essential_w = asked.essential.total_w.mean(axis=-1)[rows] + supply.own_use_w
     air_c = chain.weather_at(robot).table["temp_air"].to_numpy()
-    months = np.array([month for month in range(1, 13) if (lanes.month == month).any()])
-    load_w = np.array([_mean(essential_w, chain, robot, month) for month in months])
-    cold_c = np.array([_mean(air_c, chain, robot, month) for month in months])
+    hours_out = month_hours(lanes)
+    months = np.flatnonzero(hours_out > 0)
+    load_w, cold_c = (month_sums(values, lanes)[months] / hours_out[months] for values in (essential_w, air_c))
     hungry = load_w >= load_w.max() * (1.0 - 1e-6)
     at = int(np.flatnonzero(hungry)[np.argmin(cold_c[hungry])])
     offer_w = supply.offer_w[:, 0, :].mean(axis=-1)
@@ -62,7 +63,7 @@ def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
         dark_worn_h=hours("worn", 0.0),
         darkest_week_new_h=hours("new", week_w),
         darkest_week_worn_h=hours("worn", week_w),
-        worst_month=int(months[at]),
+        worst_month=int(months[at]) + 1,
     )
 
 
@@ -87,9 +88,3 @@ def _least_mean_w(watts: FloatArray, hours: FloatArray, *, ring: bool) -> float:
     run_on = watts[: steps - 1] if ring else watts[:0]
     total = np.concatenate(([0.0], np.cumsum(np.concatenate((watts, run_on)))))
     return float((total[steps:] - total[:-steps]).min()) / steps
-
-
-def _mean(values: FloatArray, chain: Chain, robot: Robot, month: int) -> float:
-    lanes = chain.lanes(robot)
-    rows, hours = lanes.row[lanes.month == month], lanes.step_h[lanes.month == month]
-    return float((values[rows] * hours).sum() / hours.sum())

@@ -22,8 +22,8 @@ Keep = Literal["verdict", "months", "trace"]
 T = TypeVar("T")
 
 PARKED = ("random", "mean", "worst")
-N_VOLTS = 5
-"""Battery voltages at which supply and demand are tabulated where they follow the battery."""
+SUPPLY_VOLTS, DEMAND_VOLTS = 5, 3
+"""Battery voltages tabulated where something follows the battery: a panel bends with it, a rail is nearly straight."""
 
 
 class _Kept:
@@ -97,7 +97,7 @@ class Chain:
     def supply(self, robot: Robot, *, watts: FloatArray | None = None, accounts: bool = True) -> Supply:
         """What the panels offer at the battery, for the robot's own wattage or for each of ``watts``."""
         sizes = np.array([robot.watts]) if watts is None else np.asarray(watts, dtype=float)
-        volts = self.battery_v(robot)
+        volts = self.supply_v(robot)
         key = (_light_key(robot), robot.panels, robot.controller, tuple(sizes), tuple(volts), accounts)
         return self._supplies.get(
             key,
@@ -112,46 +112,51 @@ class Chain:
 
     def demand(self, robot: Robot) -> Demand:
         """What the loads ask for at the battery."""
-        volts = self.battery_v(robot)
+        volts = self.demand_v(robot)
         key = (robot.loads, robot.rails, robot.site.time_zone, robot.site.longitude, tuple(volts))
         return self._demands.get(
             key, lambda: demand(robot, self.weather.ref_times, battery_v=volts, reference=self.reference)
         )
 
-    def battery_v(self, robot: Robot) -> FloatArray:
-        """Pack voltages at which supply and demand are tabulated: one where nothing depends on the voltage."""
-        ends_v = battery_voltages(pack_of(robot.battery), n=2)
-        if follows_battery(robot) or any(rail.kind in ("linear", "none") for rail in robot.rails):
-            return battery_voltages(pack_of(robot.battery), n=N_VOLTS)
-        return np.array([ends_v.mean()])
+    def supply_v(self, robot: Robot) -> FloatArray:
+        """Pack voltages at which the supply is tabulated: one where it does not follow the battery."""
+        return _nodes(robot, SUPPLY_VOLTS if follows_battery(robot) else 1)
+
+    def demand_v(self, robot: Robot) -> FloatArray:
+        """Pack voltages at which the demand is tabulated: one where no rail follows the battery."""
+        follows = any(rail.kind in ("linear", "none") or rail.diode_drop_v > 0 for rail in robot.rails)
+        return _nodes(robot, DEMAND_VOLTS if follows else 1)
 
     def first_month(self, robot: Robot) -> int:
         """The month energy years start with: the one after that of the largest surplus of the robot as filed."""
-        if robot.deployment is not None:
-            return robot.deployment.first[0]
         key = (_light_key(robot), robot.panels, robot.controller, robot.battery, robot.rails, robot.loads)
-        return self._first_months.get(key, lambda: self._month_after_plenty(robot))
+        return self._first_months.get(key, lambda: int(self.first_months(robot, self.supply(robot))[0]))
 
-    def _month_after_plenty(self, robot: Robot) -> int:
-        offer_w = self.supply(robot).offer_w[:, 0, :].mean(axis=-1)
+    def first_months(self, robot: Robot, supply: Supply) -> IntArray:
+        """The month energy years would start with, for each wattage of ``supply``; (n_watts,)."""
+        if robot.deployment is not None:
+            return np.full(supply.watts.size, robot.deployment.first[0])
         asked = self.demand(robot)
         asked_w = asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1)
-        surplus_w = offer_w - asked_w[self.weather.row]
+        asked_w = asked_w[self.weather.row]
         steps = np.bincount(self.months, minlength=13)[1:]
-        by_month = np.bincount(self.months, weights=surplus_w, minlength=13)[1:] / np.maximum(steps, 1)
-        return (int(np.argmax(np.where(steps > 0, by_month, -np.inf))) + 1) % 12 + 1
+        best = []
+        for offer_w in supply.offer_w.mean(axis=-1).T:
+            total = np.bincount(self.months, weights=offer_w - asked_w, minlength=13)[1:]
+            best.append(int(np.argmax(np.where(steps > 0, total / np.maximum(steps, 1), -np.inf))))
+        return (np.array(best) + 1) % 12 + 1
 
-    def lanes(self, robot: Robot) -> Lanes:
-        """Energy years (or deployments) of ``robot`` as filed, side by side."""
+    def lanes(self, robot: Robot, *, first_month: int | None = None) -> Lanes:
+        """Energy years (or deployments) of ``robot`` as filed, side by side; ``first_month`` overrules its own."""
         deployment = None if robot.deployment is None else (robot.deployment.first, robot.deployment.last)
-        first_month = self.first_month(robot)
+        month = self.first_month(robot) if first_month is None else first_month
         return self._lanes.get(
-            (first_month, deployment),
+            (month, deployment),
             lambda: energy_years(
                 self.weather.times,
                 step_h=self.weather.step_h,
                 zone=self.weather.place.time_zone,
-                first_month=first_month,
+                first_month=month,
                 deployment=deployment,
             ),
         )
@@ -166,17 +171,18 @@ class Chain:
         designs: Designs | None = None,
         *,
         watts: FloatArray | None = None,
+        supply: Supply | None = None,
         lanes: Lanes | None = None,
         age: Age = "worn",
         keep: Keep = "months",
     ) -> Balance:
         """Balance of the robot as filed, or of every one of ``designs`` (whose ``watts_at`` index ``watts``).
 
-        ``lanes`` holds several robots to one calendar; left out, the robot's own.
+        ``supply`` takes the place of the robot's own and of ``watts``; ``lanes`` holds several robots to one calendar.
         """
         asked = self.demand(robot)
         return balance(
-            self.supply(robot, watts=watts, accounts=watts is None or keep != "verdict"),
+            self.supply(robot, watts=watts, accounts=watts is None or keep != "verdict") if supply is None else supply,
             asked,
             self.pack(robot, age=age),
             self.lanes(robot) if lanes is None else lanes,
@@ -185,6 +191,11 @@ class Chain:
             row=self.weather.row,
             keep=keep,
         )
+
+
+def _nodes(robot: Robot, n: int) -> FloatArray:
+    pack = pack_of(robot.battery)
+    return battery_voltages(pack, n=n) if n > 1 else np.array([battery_voltages(pack, n=2).mean()])
 
 
 def _light_key(robot: Robot) -> Hashable:

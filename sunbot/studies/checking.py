@@ -11,15 +11,17 @@ import pandas as pd
 
 from .. import __version__
 from ..calendar import Lanes
+from ..harvest import Supply
 from ..harvest.temperatures import mean_cell_temp_c
 from ..inputs.robot import Robot
+from ..light import mean_plane_w_m2
 from ..sky import Weather, weather_for
 from ..storage import Balance, Trace, as_filed
 from ..types import Caution, FloatArray
 from .autonomy import Autonomy, autonomy_of
 from .cautions import check_cautions
 from .chain import Chain
-from .designs import repeated, side_by_side
+from .designs import repeated
 from .flows import EnergyYear, Step, energy_year, light_to_panel
 from .inputs_used import InputsUsed, inputs_used
 from .months import month_table
@@ -155,20 +157,20 @@ def check(
 def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:
     """`check` on a chain that may already hold the stages' results."""
     lanes = chain.lanes(robot)
-    balance, dim, dimmer = _run(chain, robot, trace=trace)
+    balance = chain.run(robot, keep="trace" if trace else "months")
     verdict = verdict_on(balance, robot.target)
-    plane_w_m2 = (chain.lights(robot)[0].plane_w_m2 * chain.lights(robot)[0].weight).sum(axis=1)
+    plane_w_m2 = mean_plane_w_m2(chain.lights(robot)[0])
     months = month_table(balance, lanes, plane_w_m2)
     if balance.ledger is None:
         raise RuntimeError("the balance kept no ledger")
-    worst = _survival_worst_parked(chain, robot, float(verdict.survival[0]))
+    dim, dimmer, worst = _what_ifs(chain, robot)
     return CheckResult(
         robot=robot,
         weather=chain.weather,
         inputs=inputs_used(robot, chain.weather, years=verdict.years, seed=seed, first_month=lanes.first_month),
         verdict=verdict,
         survival_light_minus_10=dim,
-        survival_worst_parked=worst,
+        survival_worst_parked=None if worst == float(verdict.survival[0]) else worst,
         visits_per_year=float(balance.visits[:, 0].mean()),
         months=months,
         autonomy=autonomy_of(chain, robot),
@@ -185,27 +187,32 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
     )
 
 
-def _run(chain: Chain, robot: Robot, *, trace: bool) -> tuple[Balance, float, float]:
-    """The robot as filed, and its survival in light 10 and 15 % dimmer, side by side where no trajectory is kept."""
+def _what_ifs(chain: Chain, robot: Robot) -> tuple[float, float, float | None]:
+    """Survival in light 10 and 15 % dimmer, and of a robot that roams but always parks the wrong way (else None)."""
     filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
-    dim = replace(repeated(filed, 2), light_x=np.array([DIM_LIGHT_X, COARSE_LIGHT_X]))
-    if trace:
-        balance = chain.run(robot, filed, keep="trace")
-        survival = verdict_on(chain.run(robot, dim, keep="verdict"), robot.target).survival
-        return balance, float(survival[0]), float(survival[1])
-    balance = chain.run(robot, side_by_side(filed, dim), keep="months")
+    light_x, watts_at, offers = [DIM_LIGHT_X, COARSE_LIGHT_X], [0, 0], [chain.supply(robot)]
+    if robot.heading == "roams" and robot.parked != "worst":
+        light_x, watts_at = [*light_x, 1.0], [*watts_at, 1]
+        offers.append(chain.supply(robot.model_copy(update={"parked": "worst"}), accounts=False))
+    designs = replace(
+        repeated(filed, len(light_x)), light_x=np.array(light_x), watts_at=np.array(watts_at, dtype=np.int64)
+    )
+    balance = chain.run(robot, designs, supply=_beside(offers), keep="verdict")
     survival = verdict_on(balance, robot.target).survival
-    return balance, float(survival[1]), float(survival[2])
+    return float(survival[0]), float(survival[1]), float(survival[2]) if len(light_x) > 2 else None
 
 
-def _survival_worst_parked(chain: Chain, robot: Robot, as_filed: float) -> float | None:
-    """Share alive if the robot always parks the wrong way, where that differs from the answer."""
-    if robot.heading != "roams" or robot.parked == "worst":
-        return None
-    wrong_way = robot.model_copy(update={"parked": "worst"})
-    balance = chain.run(wrong_way, lanes=chain.lanes(robot), keep="verdict")
-    survival = float(verdict_on(balance, robot.target).survival[0])
-    return None if survival == as_filed else survival
+def _beside(offers: list[Supply]) -> Supply:
+    """Several supplies of the same robot as columns of one, without accounts."""
+    if len(offers) == 1:
+        return offers[0]
+    return replace(
+        offers[0],
+        watts=np.concatenate([offer.watts for offer in offers]),
+        offer_w=np.concatenate([offer.offer_w for offer in offers], axis=1),
+        panel_w=None,
+        wire_w=None,
+    )
 
 
 def _outages(balance: Balance, lanes: Lanes, weather: Weather) -> Outages:

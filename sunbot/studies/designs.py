@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import fields, replace
+from dataclasses import replace
 
 import numpy as np
 
@@ -22,16 +22,6 @@ def design_grid(
         many,
         watts_at=many.watts_at if watts_at is None else np.asarray(watts_at, dtype=np.int64).ravel(),
         battery_ah=many.battery_ah if battery_ah is None else np.asarray(battery_ah, dtype=float).ravel(),
-    )
-
-
-def side_by_side(first: Designs, second: Designs) -> Designs:
-    """Two sets of designs as one."""
-    return Designs(
-        **{
-            field.name: np.concatenate((getattr(first, field.name), getattr(second, field.name)), axis=-1)
-            for field in fields(Designs)
-        }
     )
 
 

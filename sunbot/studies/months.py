@@ -12,6 +12,18 @@ from ..types import FloatArray
 PER_DAY = ("plane_wh_m2_day", "harvest_wh_day", "spilled_wh_day", "demand_wh_day", "unserved_wh_day", "skipped_wh_day")
 
 
+def month_sums(values: FloatArray, lanes: Lanes) -> FloatArray:
+    """Values of the weather's steps (n_times,) times the hours of the lanes' steps, summed by calendar month; (12,)."""
+    month = np.repeat(lanes.month, lanes.row.shape[1])
+    weights = (values[lanes.row] * lanes.step_h).ravel()
+    return np.asarray(np.bincount(month, weights=weights, minlength=13)[1:])
+
+
+def month_hours(lanes: Lanes) -> FloatArray:
+    """Hours of all lanes by calendar month; (12,)."""
+    return np.asarray(np.bincount(lanes.month, weights=lanes.step_h.sum(axis=1), minlength=13)[1:])
+
+
 def month_table(balance: Balance, lanes: Lanes, plane_w_m2: FloatArray, *, design: int = 0) -> pd.DataFrame:
     """Monthly means per day and extremes of one design.
 
@@ -24,17 +36,11 @@ def month_table(balance: Balance, lanes: Lanes, plane_w_m2: FloatArray, *, desig
     -------
     DataFrame indexed by month 1-12, columns as in the JSON of ``check``; NaN in months that no lane reaches.
     """
-    hours = np.array([lanes.step_h[lanes.month == month].sum() for month in range(1, 13)])
+    hours = month_hours(lanes)
     with np.errstate(invalid="ignore", divide="ignore"):
         days = np.where(hours > 0, hours / 24.0, np.nan)
-        plane_wh = np.array(
-            [
-                (plane_w_m2[lanes.row[lanes.month == month]] * lanes.step_h[lanes.month == month]).sum()
-                for month in range(1, 13)
-            ]
-        )
         totals = {
-            "plane_wh_m2_day": plane_wh,
+            "plane_wh_m2_day": month_sums(plane_w_m2, lanes),
             "harvest_wh_day": _pooled(balance.harvest_wh, design),
             "spilled_wh_day": _pooled(balance.spilled_wh, design),
             "demand_wh_day": _pooled(balance.demand_wh, design),
