@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from .errors import InputError
     from .inputs import Robot, Site, load_robot, load_site
     from .sky import Weather, weather_for
-    from .studies import CheckResult, check
+    from .studies import CheckResult, PickResult, check, pick
 
 _HOME = {
     "InputError": "errors",
@@ -25,9 +25,23 @@ _HOME = {
     "weather_for": "sky",
     "CheckResult": "studies",
     "check": "studies",
+    "PickResult": "studies",
+    "pick": "studies",
 }
 
-__all__ = ["CheckResult", "InputError", "Robot", "Site", "Weather", "check", "load_robot", "load_site", "weather_for"]
+__all__ = [
+    "CheckResult",
+    "InputError",
+    "PickResult",
+    "Robot",
+    "Site",
+    "Weather",
+    "check",
+    "load_robot",
+    "load_site",
+    "pick",
+    "weather_for",
+]
 
 
 def __getattr__(name: str) -> Any:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import os
+import sys
 from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, TypeVar
@@ -9,7 +11,7 @@ from typing import TYPE_CHECKING, Any, TypeVar
 import click
 
 from . import __version__
-from .errors import InputError
+from .errors import Fault, InputError
 
 if TYPE_CHECKING:
     from .inputs import Robot, Site
@@ -18,6 +20,7 @@ F = TypeVar("F", bound=Callable[..., Any])
 
 TARGET_NOT_MET = 3
 INTERRUPTED = 130
+MOST_SIZES = 200
 ROBOT_OR_SITE_FILE = click.Path(path_type=Path)
 OUT_FILE = click.Path(dir_okay=False, path_type=Path)
 
@@ -42,6 +45,61 @@ class Commands(click.Group):
         except KeyboardInterrupt as error:
             click.echo("\nInterrupted: nothing was written.", err=True)
             raise click.exceptions.Exit(INTERRUPTED) from error
+
+
+class Sizes(click.ParamType):  # type: ignore[type-arg]  # generic since click 8.2
+    """LOW:HIGH:STEP or a list by commas, as ascending numbers above 0."""
+
+    name = "sizes"
+    example = "LOW:HIGH:STEP, e.g. 10:120:10, or a list, e.g. 20,40,60"
+
+    def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> list[float]:
+        where = _where(param, value)
+        if ":" not in value:
+            return sorted(set(_numbers(value.split(","), where, self.example)))
+        low, high, step = _numbers(value.split(":"), where, self.example, count=3)
+        if high < low:
+            raise InputError(Fault(where, f"{high:g} is below {low:g}", f"the smaller first: {self.example}"))
+        count = int((high - low) / step * (1 + 1e-9)) + 1
+        if count > MOST_SIZES:
+            raise InputError(Fault(where, f"these are {count} sizes, at most {MOST_SIZES} are tried", "a larger step"))
+        return [low + at * step for at in range(count)]
+
+
+class Range(click.ParamType):  # type: ignore[type-arg]
+    """LOW:HIGH, two numbers above 0, the smaller first."""
+
+    name = "range"
+    example = "LOW:HIGH, the smaller first, e.g. 5:60"
+
+    def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> tuple[float, float]:
+        where = _where(param, value)
+        low, high = _numbers(value.split(":"), where, self.example, count=2)
+        if high <= low:
+            raise InputError(Fault(where, f"{high:g} is not above {low:g}", self.example))
+        return low, high
+
+
+def _where(param: click.Parameter | None, value: str) -> str:
+    return f"{param.opts[0] if param is not None else ''} {value}"
+
+
+def _numbers(parts: list[str], where: str, example: str, *, count: int | None = None) -> list[float]:
+    """The parts as finite numbers above 0."""
+    import math
+
+    if count is not None and len(parts) != count:
+        raise InputError(Fault(where, f"{count} numbers are needed between colons, here are {len(parts)}", example))
+    out = []
+    for part in parts:
+        try:
+            number = float(part)
+        except ValueError:
+            raise InputError(Fault(where, f"{part!r} is not a number", example)) from None
+        if not math.isfinite(number) or number <= 0:
+            raise InputError(Fault(where, f"{part} is not above 0", example))
+        out.append(number)
+    return out
 
 
 def weather_options(command: F) -> F:
@@ -100,6 +158,44 @@ def check(
     filed = _robot(robot, site, weather)
     result = studies.check(filed, years=years, seed=seed, trace=csv is not None or plot is not None)
     click.echo(report.deliver_check(result, outputs, notes=_note), nl=False)
+    ctx.exit(0 if result.met else TARGET_NOT_MET)
+
+
+@cli.command()
+@click.argument("robot", type=ROBOT_OR_SITE_FILE)
+@click.option("--watts", type=Sizes(), metavar="LOW:HIGH:STEP", help="Panels to try, e.g. 10:120:10 or 20,40,60.")
+@click.option("--battery-ah", type=Range(), metavar="LOW:HIGH", help="Batteries to try, e.g. 5:60.")
+@click.option("--controllers", is_flag=True, help="Compare direct, PWM and MPPT.")
+@click.option("--site", type=ROBOT_OR_SITE_FILE, metavar="FILE", help="Use this site instead of the robot file's.")
+@weather_options
+@output_options
+@click.pass_context
+def pick(
+    ctx: click.Context,
+    robot: Path,
+    watts: list[float] | None,
+    battery_ah: tuple[float, float] | None,
+    controllers: bool,
+    site: Path | None,
+    weather: str | None,
+    years: int,
+    seed: int,
+    as_json: bool,
+    csv: Path | None,
+    plot: Path | None,
+) -> None:
+    """Which panel, with which battery, is the smallest that keeps the robot of ROBOT alive?"""
+    from . import report, studies
+
+    outputs = report.Outputs(as_json, csv, plot)
+    outputs.ready()
+    filed = _robot(robot, site, weather)
+    also = [name for name, asked in (("map", plot is not None), ("controllers", controllers)) if asked]
+    with report.Progress(sys.stderr) as progress:
+        result = studies.pick(
+            filed, watts=watts, battery_ah=battery_ah, years=years, seed=seed, also=also, watcher=progress
+        )
+    click.echo(report.deliver_pick(result, outputs, notes=_note), nl=False)
     ctx.exit(0 if result.met else TARGET_NOT_MET)
 
 
@@ -182,4 +278,11 @@ def _note(text: str) -> None:
 
 def main() -> None:
     """Entry point of the ``sunbot`` command."""
-    cli(prog_name="sunbot")
+    try:
+        cli(prog_name="sunbot")
+    except SystemExit as end:
+        if end.code == INTERRUPTED:
+            # Threads still at work would keep the process for as long as they last.
+            sys.stderr.flush()
+            os._exit(INTERRUPTED)
+        raise

@@ -11,7 +11,7 @@ from .delivery import Outputs, deliver
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-    from ..studies import CheckResult, SurveyResult
+    from ..studies import CheckResult, PickResult, SurveyResult
 
 
 def deliver_check(result: CheckResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:
@@ -29,6 +29,23 @@ def deliver_check(result: CheckResult, outputs: Outputs, *, notes: Callable[[str
         return check_figure(answer)
 
     return deliver(result, outputs, text=check_text, csv=csv, figure=figure, notes=notes)
+
+
+def deliver_pick(result: PickResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:
+    """Write what was asked for; return what belongs on stdout."""
+    from .pick_text import pick_text
+
+    def csv(answer: PickResult, path: Path) -> None:
+        from .tables import write_table
+
+        write_table(answer.pairs_table, path)
+
+    def figure(answer: PickResult) -> Figure:
+        from .pick_plots import pick_figure
+
+        return pick_figure(answer)
+
+    return deliver(result, outputs, text=pick_text, csv=csv, figure=figure, notes=notes)
 
 
 def deliver_sky(result: SurveyResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:

@@ -1,6 +1,8 @@
 """The questions: the stages joined by a chain, asked by check, pick, season and survey."""
 
 from .checking import CheckResult, check
+from .pick_result import PickResult
+from .picking import pick
 from .surveying import SurveyResult, survey
 
-__all__ = ["CheckResult", "SurveyResult", "check", "survey"]
+__all__ = ["CheckResult", "PickResult", "SurveyResult", "check", "pick", "survey"]
