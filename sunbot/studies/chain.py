@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections import OrderedDict
 from collections.abc import Callable, Hashable
+from dataclasses import replace
 from typing import Any, Literal, TypeVar
 
 import numpy as np
@@ -77,6 +78,13 @@ class Chain:
         if self._sun is None:
             self._sun = sun_over(self.weather)
         return self._sun
+
+    def in_other_air(self, warmer_k: float) -> Chain:
+        """The same years with the air warmer by ``warmer_k`` throughout; shares what does not depend on the air."""
+        table = self.weather.table.assign(temp_air=self.weather.table["temp_air"] + warmer_k)
+        other = Chain(replace(self.weather, table=table), seed=self.seed)
+        other._sun, other._lights, other._demands, other._lanes = self.sun(), self._lights, self._demands, self._lanes
+        return other
 
     def weather_at(self, robot: Robot) -> Weather:
         """The weather as cells and battery of ``robot`` feel it: behind a window the room's air, without wind."""

@@ -53,16 +53,17 @@ class DarkSpell:
         }
 
 
-def lowest_sums(daily_wh: FloatArray, days: int) -> tuple[FloatArray, IntArray]:
+def lowest_sums(daily_wh: FloatArray, days: int, *, ring: bool = True) -> tuple[FloatArray, IntArray]:
     """Least sum of ``days`` days in a row that begin in each year.
 
     Parameters
     ----------
     daily_wh : (n_years, n_days)
-        Energy of each day, NaN where a year has no such day (a February without its 29th). The years form a ring: a
-        spell may run on into the next one, and from the last into the first.
+        Energy of each day, NaN where a year has no such day (a February without its 29th).
     days : int
         Length of the spell, at most that of a year.
+    ring : bool
+        A spell may run on into the next year, and from the last into the first; else it stays within its year.
 
     Returns
     -------
@@ -77,10 +78,13 @@ def lowest_sums(daily_wh: FloatArray, days: int) -> tuple[FloatArray, IntArray]:
     there = ~np.isnan(daily_wh)
     if not 1 <= days <= there.sum(axis=1).min():
         raise ValueError(f"a spell of {days} days does not fit into a year of {n_days} days")
-    ring = daily_wh[there]
-    total = np.concatenate(([0.0], np.cumsum(np.concatenate((ring, ring[: days - 1])))))
+    flat = daily_wh[there]
+    total = np.concatenate(([0.0], np.cumsum(np.concatenate((flat, flat[: days - 1])))))
     sums = np.full((n_years, n_days), np.inf)
     sums[there] = total[days:] - total[:-days]
+    if not ring:
+        left = np.cumsum(there[:, ::-1], axis=1)[:, ::-1]  # days from each one to the end of its year
+        sums[left < days] = np.inf
     start = np.argmin(sums, axis=1)
     return np.maximum(sums[np.arange(n_years), start], 0.0), start.astype(np.int64)
 
@@ -171,9 +175,14 @@ def days_of(watts: FloatArray, times: pd.DatetimeIndex, lanes: Lanes, *, zone: s
 
 
 def dark_spells(
-    daily_wh: FloatArray, dates: DateArray, *, lengths: tuple[int, ...] = SPELL_DAYS, seed: int = 1
+    daily_wh: FloatArray,
+    dates: DateArray,
+    *,
+    lengths: tuple[int, ...] = SPELL_DAYS,
+    seed: int = 1,
+    ring: bool = True,
 ) -> tuple[DarkSpell, ...]:
-    """The darkest spells of each length over a ring of years, with how often a year as dark comes back.
+    """The darkest spells of each length over some years, with how often a year as dark comes back.
 
     Parameters
     ----------
@@ -183,6 +192,8 @@ def dark_spells(
         Lengths of the spells [days].
     seed : int
         Of the interval.
+    ring : bool
+        Whether spells may run on from year to year, as in `lowest_sums`.
 
     Returns
     -------
@@ -191,7 +202,7 @@ def dark_spells(
     """
     spells = []
     for days in lengths:
-        lows, starts = lowest_sums(daily_wh, days)
+        lows, starts = lowest_sums(daily_wh, days, ring=ring)
         year = int(np.argmin(lows))
         lowest = float(lows[year])
         period = return_period(lows, lowest) if len(lows) >= FEWEST_YEARS else None
