@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from .errors import InputError
     from .inputs import Robot, Site, load_robot, load_site
     from .sky import Weather, weather_for
-    from .studies import CheckResult, PickResult, check, pick
+    from .studies import CheckResult, PickResult, SeasonResult, check, pick, season
 
 _HOME = {
     "InputError": "errors",
@@ -27,6 +27,8 @@ _HOME = {
     "check": "studies",
     "PickResult": "studies",
     "pick": "studies",
+    "SeasonResult": "studies",
+    "season": "studies",
 }
 
 __all__ = [
@@ -34,12 +36,14 @@ __all__ = [
     "InputError",
     "PickResult",
     "Robot",
+    "SeasonResult",
     "Site",
     "Weather",
     "check",
     "load_robot",
     "load_site",
     "pick",
+    "season",
     "weather_for",
 ]
 

@@ -200,6 +200,38 @@ def pick(
 
 
 @cli.command()
+@click.argument("robot", type=ROBOT_OR_SITE_FILE)
+@click.option("--site", type=ROBOT_OR_SITE_FILE, metavar="FILE", help="Use this site instead of the robot file's.")
+@weather_options
+@output_options
+@click.pass_context
+def season(
+    ctx: click.Context,
+    robot: Path,
+    site: Path | None,
+    weather: str | None,
+    years: int,
+    seed: int,
+    as_json: bool,
+    csv: Path | None,
+    plot: Path | None,
+) -> None:
+    """When is it darkest for the robot of ROBOT, how much work does each month afford, what would move the answer?
+
+    The steps that --csv writes are those of the worst fortnight.
+    """
+    from . import report, studies
+
+    outputs = report.Outputs(as_json, csv, plot)
+    outputs.ready()
+    filed = _robot(robot, site, weather)
+    with report.Progress(sys.stderr) as progress:
+        result = studies.season(filed, years=years, seed=seed, watcher=progress)
+    click.echo(report.deliver_season(result, outputs, notes=_note), nl=False)
+    ctx.exit(0 if result.met else TARGET_NOT_MET)
+
+
+@cli.command()
 @click.argument("folder", type=click.Path(path_type=Path))
 @click.option("--example", metavar="NAME", help="Copy this example instead.")
 @click.option("--lat", "latitude", type=click.FloatRange(-90, 90), help="Degrees, north positive.")

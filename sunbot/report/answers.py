@@ -11,7 +11,7 @@ from .delivery import Outputs, deliver
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-    from ..studies import CheckResult, PickResult, SurveyResult
+    from ..studies import CheckResult, PickResult, SeasonResult, SurveyResult
 
 
 def deliver_check(result: CheckResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:
@@ -46,6 +46,23 @@ def deliver_pick(result: PickResult, outputs: Outputs, *, notes: Callable[[str],
         return pick_figure(answer)
 
     return deliver(result, outputs, text=pick_text, csv=csv, figure=figure, notes=notes)
+
+
+def deliver_season(result: SeasonResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:
+    """Write what was asked for; return what belongs on stdout."""
+    from .season_text import season_text
+
+    def csv(answer: SeasonResult, path: Path) -> None:
+        from .tables import fortnight_table, write_table
+
+        write_table(fortnight_table(answer), path)
+
+    def figure(answer: SeasonResult) -> Figure:
+        from .season_plots import season_figure
+
+        return season_figure(answer)
+
+    return deliver(result, outputs, text=season_text, csv=csv, figure=figure, notes=notes)
 
 
 def deliver_sky(result: SurveyResult, outputs: Outputs, *, notes: Callable[[str], None]) -> str:

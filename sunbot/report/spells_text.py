@@ -19,6 +19,11 @@ def spells_text(spells: Sequence[DarkSpell], *, rated_w: float | None, what: str
     for spell in spells:
         share = f"{spell.wh / rated_w:>13.3g}" if rated_w else ""
         once = "-" if spell.return_years is None else f"{spell.return_years:.0f} years"
-        interval = "" if spell.low is None or spell.high is None else f"   {spell.low:.3g} to {spell.high:.3g}"
-        rows.append(f"  {spell.days:>6}{spell.wh:>10.4g}{share}   {spell.start.isoformat():12}{once:>14}{interval}")
+        interval = "" if spell.low is None or spell.high is None else f"   {_wh(spell.low)} to {_wh(spell.high)}"
+        rows.append(f"  {spell.days:>6}{_wh(spell.wh):>10}{share}   {spell.start.isoformat():12}{once:>14}{interval}")
     return "\n".join(rows)
+
+
+def _wh(energy: float) -> str:
+    """Three digits, and never a power of ten."""
+    return f"{energy:.3g}" if energy < 1000 else f"{energy:.0f}"

@@ -12,6 +12,7 @@ if TYPE_CHECKING:
 
     from ..sky import Weather
     from ..studies.checking import CheckResult
+    from ..studies.seasons import SeasonResult
 
 TRACE_COLUMNS = (
     "time",
@@ -56,6 +57,16 @@ def weather_table(weather: Weather) -> pd.DataFrame:
     """The weather as sunbot uses it: the UTC middle of each step, light [W/m2], air [degC], wind [m/s]."""
     table = weather.table.reset_index(drop=True)
     table.insert(0, "time", weather.times.strftime("%Y-%m-%dT%H:%M:%SZ"))
+    return table
+
+
+def fortnight_table(result: SeasonResult) -> pd.DataFrame:
+    """The worst fortnight step by step, columns as those of a check; time is the UTC middle of the step."""
+    import pandas as pd
+
+    steps = result.worst.steps
+    table = steps[list(TRACE_COLUMNS[1:])].reset_index(drop=True)
+    table.insert(0, "time", pd.DatetimeIndex(steps.index).tz_convert("UTC").strftime("%Y-%m-%dT%H:%M:%SZ"))
     return table
 
 

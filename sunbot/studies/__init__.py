@@ -3,6 +3,7 @@
 from .checking import CheckResult, check
 from .pick_result import PickResult
 from .picking import pick
+from .seasons import SeasonResult, season
 from .surveying import SurveyResult, survey
 
-__all__ = ["CheckResult", "PickResult", "SurveyResult", "check", "pick", "survey"]
+__all__ = ["CheckResult", "PickResult", "SeasonResult", "SurveyResult", "check", "pick", "season", "survey"]
