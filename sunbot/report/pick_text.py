@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+from textwrap import fill
 from typing import TYPE_CHECKING
 
-from .text import cautions_text
+from .text import WIDTH, cautions_text
 
 if TYPE_CHECKING:
     from ..studies.pick_result import Pair, PickResult
@@ -21,7 +22,8 @@ def _headline(result: PickResult) -> str:
     aim = f"{target.survival:.0%} of years alive"
     if any(load.skip_below_soc is not None for load in robot.loads):
         aim += f", {target.work_done:.0%} of the skippable work done in the worst month"
-    head = f"{robot.name} at {robot.site.name}: {aim}, judged with a battery worn to {robot.battery.worn_capacity:.0%}"
+    worn = f"judged with a battery worn to {robot.battery.worn_capacity:.0%}"
+    head = f"{robot.name} at {robot.site.name}, {worn}\n  target: {aim}"
     weather = f"  weather: {result.weather.origin}"
     if taken is None:
         return (
@@ -34,7 +36,8 @@ def _headline(result: PickResult) -> str:
     return (
         f"{head}\n{weather}\n\n  take {taken.watts:.4g} W of panel and {taken.battery_ah:.4g} Ah (when new), "
         f"{robot.battery.cells_in_series} cells {robot.battery.chemistry}\n"
-        f"  alive in {taken.survival:.0%} of the years{confirmed}\n  why: {taken.why}"
+        f"  alive in {taken.survival:.0%} of the years{confirmed}\n"
+        + fill(f"why: {taken.why}", WIDTH, initial_indent="  ", subsequent_indent="  ")
     )
 
 
@@ -92,11 +95,9 @@ def _share(value: float | None) -> str:
 
 
 def _by_autonomy(result: PickResult) -> str:
-    from textwrap import fill
-
     sizing = result.by_autonomy
     watts = "no panel (its worst month gives nothing)" if sizing.watts is None else f"{sizing.watts:.3g} W"
     return (
         f"By the arithmetic of {sizing.days:g} autonomy days, as a cross-check: {watts}, {sizing.battery_ah:.3g} Ah\n"
-        + fill(sizing.why_different, 96, initial_indent="  ", subsequent_indent="  ")
+        + fill(sizing.why_different, WIDTH, initial_indent="  ", subsequent_indent="  ")
     )

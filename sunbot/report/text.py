@@ -36,6 +36,7 @@ def check_text(result: CheckResult) -> str:
     """All of the answer, most important first."""
     parts = [
         check_head(result),
+        _nearness(result),
         months_text(result.months),
         _autonomy(result),
         _outages(result),
@@ -75,6 +76,25 @@ def check_head(result: CheckResult) -> str:
     if result.visits_per_year > 0:
         lines.append(f"  someone has to go there and restart it {result.visits_per_year:.2g} times a year")
     return "\n".join(lines)
+
+
+def _nearness(result: CheckResult) -> str:
+    """How much more it would carry, or each single change that would do."""
+    if result.extra_load_w is not None:
+        if result.extra_load_w == 0:
+            return "How close: next to nothing more would fit, not a thirtieth of its mean load."
+        return (
+            f"How close: {result.extra_load_w:.2g} W more, day and night at the battery, would still meet the target."
+        )
+    if result.met:
+        return ""
+    if not result.ways_out:
+        return (
+            "Ways out: no single change meets the target, neither ten times the panel nor twenty times the battery;\n"
+            "  sunbot pick looks for panel and battery together."
+        )
+    lines = [f"  - {way.change}" for way in result.ways_out]
+    return "\n".join(["Ways out, each enough alone, the smallest change first", *lines])
 
 
 def _one_year(survived: int) -> str:
@@ -150,10 +170,16 @@ def _outages(result: CheckResult) -> str:
         return "Outages of essential loads: none."
     zone = result.robot.site.time_zone
     first = outages.first.tz_convert(zone).strftime("%Y-%m-%d %H:%M")
+    back = (
+        "it does not always come back by itself"
+        if result.visits_per_year > 0
+        else f"it is back by itself after {_hours(outages.until_restart_h)} on average"
+    )
     return (
         f"Outages of essential loads: {outages.count_per_year:.2g} a year, {outages.hours_per_year:.3g} h a year, "
         f"the longest {_hours(outages.longest_h)}\n"
-        f"  the first begins {first} local time; {result.unserved_share:.2%} of the essential energy is not served"
+        f"  the first begins {first} local time; {back}\n"
+        f"  {result.unserved_share:.2%} of the essential energy is not served"
     )
 
 

@@ -45,9 +45,16 @@ class AutonomySizing:
 
 
 def autonomy_battery_ah(
-    load_wh_day: float, battery_v: float, *, days: float = AUTONOMY_DAYS, cold_capacity: float = 1.0
+    load_wh_day: float,
+    battery_v: float,
+    *,
+    days: float = AUTONOMY_DAYS,
+    cold_capacity: float = 1.0,
+    end_of_life: float = END_OF_LIFE,
 ) -> float:
     """Capacity for ``days`` without sun [Ah], new, with end of life, cold and margin on top.
+
+    ``cold_capacity`` and ``end_of_life`` are the shares of the capacity left, above 0 up to 1.
 
     Source
     ------
@@ -57,7 +64,7 @@ def autonomy_battery_ah(
     """
     day_ah = load_wh_day / battery_v
     unadjusted_ah = max(day_ah * days / DEEPEST_DISCHARGE, day_ah / DAILY_DISCHARGE)
-    return unadjusted_ah / END_OF_LIFE / cold_capacity * MARGIN
+    return unadjusted_ah / end_of_life / cold_capacity * MARGIN
 
 
 def autonomy_watts(load_wh_day: float, harvest_wh_day_per_w: float) -> float | None:

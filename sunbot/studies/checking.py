@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, replace
-from functools import cached_property
+from functools import cached_property, partial
 from typing import Any
 
 import numpy as np
@@ -19,6 +20,7 @@ from ..sky import Weather, weather_for
 from ..storage import Balance, Trace, as_filed
 from ..types import Caution, FloatArray
 from .autonomy import Autonomy, autonomy_of
+from .beside import Beside
 from .cautions import check_cautions
 from .chain import Chain
 from .designs import repeated
@@ -28,6 +30,7 @@ from .months import month_table
 from .plain import plain_document
 from .statistics import wilson_interval
 from .verdict import Verdict, verdict_on
+from .ways_out import Nearness, WayOut, nearness, tilt_way_out
 
 DIM_LIGHT_X = 0.9
 """The light of the second opinion: everything 10 % darker."""
@@ -37,12 +40,16 @@ COARSE_LIGHT_X = 0.85
 
 @dataclass(frozen=True)
 class Outages:
-    """Outages of the essential loads over all years; ``first`` is the instant the first one began."""
+    """Outages of the essential loads over all years.
+
+    first : instant the first one began. until_restart_h : mean time until it is back by itself or someone came.
+    """
 
     hours_per_year: float
     count_per_year: float
     longest_h: float
     first: pd.Timestamp | None
+    until_restart_h: float | None
 
 
 @dataclass(frozen=True, eq=False)
@@ -51,6 +58,8 @@ class CheckResult:
 
     verdict : of the robot as filed (one design). survival_light_minus_10 : share alive with all light 10 % lower.
     survival_worst_parked : share alive if a robot that roams always parks the wrong way; None where it does not apply.
+    ways_out : single changes that would meet the target, the smallest first; none where it is met.
+    extra_load_w : largest constant load that can be added with the target still met [W]; None where it is missed.
     months : DataFrame by month, columns as in the JSON. trace : step by step, None unless asked for.
     """
 
@@ -73,6 +82,8 @@ class CheckResult:
     trace: Trace | None = None
     plane_w_m2: FloatArray | None = None
     cell_temp_c: FloatArray | None = None
+    ways_out: tuple[WayOut, ...] = ()
+    extra_load_w: float | None = None
 
     @property
     def met(self) -> bool:
@@ -118,7 +129,10 @@ class CheckResult:
                     "count_per_year": self.outages.count_per_year,
                     "longest_h": self.outages.longest_h,
                     "first": self.outages.first,
+                    "until_restart_h": self.outages.until_restart_h,
                 },
+                "ways_out": [way.__dict__ for way in self.ways_out],
+                "extra_load_w": self.extra_load_w,
                 "unserved_share": self.unserved_share,
                 "energy_wh_per_year": {
                     "in": {"panel": self.energy.panel},
@@ -151,11 +165,24 @@ def check(
         The site's weather cannot be used, or no such robot can be built.
     """
     weather = weather_for(robot.site, years=years, seed=seed) if weather is None else weather
-    return check_on(Chain(weather, seed=seed), robot, years=years, seed=seed, trace=trace)
+    chain = Chain(weather, seed=seed)
+    chain.lanes(robot)  # with all that both need, before they part
+    with Beside(partial(_nearness_of, chain, robot)) as helper:
+        helper.ask(None)
+        result = check_on(chain, robot, years=years, seed=seed, trace=trace)
+        tilt = None if result.met else tilt_way_out(chain, robot)
+        near: Nearness = helper.answer()
+    ways = [*near.ways_out, *([] if tilt is None else [tilt])]
+    ways.sort(key=lambda way: way.times)
+    return replace(result, ways_out=tuple(ways), extra_load_w=near.extra_load_w)
+
+
+def _nearness_of(chain: Chain, robot: Robot) -> Callable[[None], Nearness]:
+    return lambda _: nearness(chain, robot)
 
 
 def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:
-    """`check` on a chain that may already hold the stages' results."""
+    """`check` on a chain that may already hold the stages' results, without how close it was."""
     lanes = chain.lanes(robot)
     balance = chain.run(robot, keep="trace" if trace else "months")
     verdict = verdict_on(balance, robot.target)
@@ -224,11 +251,13 @@ def _outages(balance: Balance, lanes: Lanes, weather: Weather) -> Outages:
     if years.size:
         steps = lanes.row[began[years], years]
         first = weather.times[int(steps.min())].tz_convert("UTC")
+    hours, count = float(balance.hours_out[:, :, 0].sum()), float(balance.outages[:, 0].sum())
     return Outages(
-        hours_per_year=float(balance.hours_out[:, :, 0].sum(axis=0).mean()),
-        count_per_year=float(balance.outages[:, 0].mean()),
+        hours_per_year=hours / began.size,
+        count_per_year=count / began.size,
         longest_h=float(balance.longest_out_h[:, 0].max()),
         first=first,
+        until_restart_h=hours / count if count > 0 else None,
     )
 
 

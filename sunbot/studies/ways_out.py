@@ -1,0 +1,167 @@
+"""How close the answer is: the smallest single change that meets the target, or the largest load that still fits."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from ..inputs.robot import Robot
+from ..storage import Designs, as_filed
+from ..types import BoolArray, FloatArray, IntArray
+from .chain import Chain
+from .designs import repeated
+from .search import smallest
+from .tilts import few_years, tilted, worst_ratio
+from .verdict import verdict_on
+
+PANEL, BATTERY, DRAW, WORK = "panel", "battery", "constant draw", "skippable work"
+MOST_X = {PANEL: 10.0, BATTERY: 20.0, DRAW: 20.0, WORK: 20.0}
+"""How far each lever is pushed before it is given up: as a multiple, or a share of one in it."""
+RESOLUTION = 0.02
+WIDTH = 12
+LEAST_X = 1.02
+PANEL_STEPS = np.array([1.0, 1.04, 1.12])
+"""Panels held against their own supply, above the one that as much more light would ask for."""
+LOADS_X = np.geomspace(1 / 30, 1.5, 48)
+"""Extra loads tried, as multiples of the mean load asked: to 9 %."""
+TILTS_DEG = np.arange(0.0, 91.0, 15.0)
+TILT_YEARS = 3
+
+
+@dataclass(frozen=True)
+class WayOut:
+    """One change that alone meets the target.
+
+    what : the lever. change : one line for people. value : the lever's new value [W panel, Ah, W less, share of the
+    minutes, deg]. times : how far it goes, as a ratio above 1, by which ways out are ordered.
+    """
+
+    what: str
+    change: str
+    value: float
+    times: float
+
+
+@dataclass(frozen=True, eq=False)
+class _Levers:
+    """The levers that apply to a robot."""
+
+    chain: Chain
+    robot: Robot
+    names: tuple[str, ...]
+    filed: Designs
+    least_essential_w: float
+
+    @classmethod
+    def of(cls, chain: Chain, robot: Robot) -> _Levers:
+        asked = chain.demand(robot)
+        least_w = float(asked.essential.total_w.mean(axis=-1).min())
+        n_levels = len(asked.level_loads)
+        names = (PANEL, BATTERY) + ((DRAW,) if least_w > 0 else ()) + ((WORK,) if n_levels else ())
+        return cls(chain, robot, names, as_filed(robot, n_levels=n_levels), least_w)
+
+    def meets(self, cases: IntArray, times: FloatArray) -> BoolArray:
+        """Whether the target is met with each lever pushed so far; a panel is as much more light."""
+        name, x = np.repeat(np.array(self.names)[cases], times.shape[1]), times.ravel()
+        many = repeated(self.filed, x.size)
+        designs = replace(
+            many,
+            light_x=np.where(name == PANEL, x, 1.0),
+            battery_ah=many.battery_ah * np.where(name == BATTERY, x, 1.0),
+            extra_w=np.where(name == DRAW, -self.less_w(x), 0.0),
+            work_x=many.work_x / np.where(name == WORK, x, 1.0),
+        )
+        balance = self.chain.run(self.robot, designs, keep="verdict")
+        return verdict_on(balance, self.robot.target).target_met.reshape(times.shape)
+
+    def less_w(self, times: FloatArray | float) -> FloatArray:
+        """What is saved of the least essential draw when it is divided [W]."""
+        return np.asarray(self.least_essential_w * (1.0 - 1.0 / np.asarray(times)))
+
+    def panel_x(self, light_x: float) -> float:
+        """The panel that does what so much more light does, its own wires and limits counted; NaN: none near."""
+        watts = np.concatenate(([1.0], light_x * PANEL_STEPS)) * self.robot.watts
+        many = replace(repeated(self.filed, PANEL_STEPS.size), watts_at=np.arange(1, watts.size))
+        lanes = self.chain.lanes(self.robot)
+        balance = self.chain.run(self.robot, many, watts=watts, lanes=lanes, keep="verdict")
+        met = verdict_on(balance, self.robot.target).target_met
+        return light_x * float(PANEL_STEPS[np.argmax(met)]) if met.any() else np.nan
+
+    def way_out(self, name: str, times: float) -> WayOut:
+        """A found ratio in words."""
+        robot, battery_ah = self.robot, self.robot.battery.capacity_ah
+        if name == PANEL:
+            value = robot.watts * times
+            return WayOut(name, f"panel {robot.watts:.4g} W -> {value:.4g} W", value, times)
+        if name == BATTERY:
+            value = battery_ah * times
+            return WayOut(name, f"battery {battery_ah:.4g} Ah -> {value:.4g} Ah", value, times)
+        if name == DRAW:
+            value = float(self.less_w(times))
+            of = f"of {self.least_essential_w:.3g} W at the battery"
+            return WayOut(name, f"draw {value:.3g} W less, day and night ({of})", value, times)
+        loads = ", ".join(load.name for load in robot.loads if load.skip_below_soc is not None)
+        return WayOut(name, f"skippable work ({loads}) cut to {1.0 / times:.0%} of its minutes", 1.0 / times, times)
+
+
+@dataclass(frozen=True)
+class Nearness:
+    """What it would take (but for the tilt) where the target is missed; how much more it would carry where it is met.
+
+    extra_load_w : largest constant load at the battery that can be added [W], to 9 % below, 0 where not even a
+    thirtieth of the mean load can; None where the target is missed.
+    """
+
+    ways_out: tuple[WayOut, ...]
+    extra_load_w: float | None
+
+
+def nearness(chain: Chain, robot: Robot) -> Nearness:
+    """How close the robot is to the other answer, whichever its own is."""
+    if verdict_on(chain.run(robot, keep="verdict"), robot.target).target_met[0]:
+        return Nearness((), _extra_load_w(chain, robot))
+    return Nearness(_ways_out(_Levers.of(chain, robot)), None)
+
+
+def _extra_load_w(chain: Chain, robot: Robot) -> float:
+    """Largest extra load tried up to which every smaller one fits."""
+    asked = chain.demand(robot)
+    extra_w = LOADS_X * float(asked.essential.total_w.mean() + asked.work.total_w.sum(axis=1).mean())
+    many = repeated(as_filed(robot, n_levels=len(asked.level_loads)), extra_w.size)
+    balance = chain.run(robot, replace(many, extra_w=extra_w), keep="verdict")
+    fits = int(np.cumprod(verdict_on(balance, robot.target).target_met).sum())
+    return float(extra_w[fits - 1]) if fits else 0.0
+
+
+def _ways_out(levers: _Levers) -> tuple[WayOut, ...]:
+    """Every lever but the tilt that alone meets the target; each found by running the study."""
+    high = np.array([MOST_X[name] for name in levers.names])
+    times = dict(
+        zip(levers.names, smallest(levers.meets, 0.0 * high + LEAST_X, high, rel=RESOLUTION, width=WIDTH), strict=True)
+    )
+    light_x = float(times[PANEL])
+    if not np.isnan(light_x):
+        times[PANEL] = levers.panel_x(light_x)
+    found = [levers.way_out(name, float(x)) for name, x in times.items() if not np.isnan(x)]
+    return tuple(found)
+
+
+def tilt_way_out(chain: Chain, robot: Robot) -> WayOut | None:
+    """A tilt of the first panel that meets the target: the best for the dark months, or half way to it.
+
+    The best is looked for on a few years, then held against all; None behind a window, where the panel turns, and
+    where no tilt brings more.
+    """
+    if robot.window is not None or robot.heading == "turns-to-sun":
+        return None
+    few, filed = few_years(chain, TILT_YEARS), robot.panels[0].tilt_deg
+    ratios = [worst_ratio(few, tilted(robot, tilt)) for tilt in TILTS_DEG]
+    if max(ratios) < LEAST_X * worst_ratio(few, robot):
+        return None
+    best = float(TILTS_DEG[int(np.argmax(ratios))])
+    for tilt in ((best + filed) / 2, best):
+        balance = chain.run(tilted(robot, tilt), lanes=chain.lanes(robot), keep="verdict")
+        if verdict_on(balance, robot.target).target_met[0]:
+            return WayOut("tilt", f"tilt {filed:.3g} deg -> {tilt:.3g} deg", tilt, 1.0 + abs(tilt - filed) / 90.0)
+    return None

@@ -1,0 +1,202 @@
+"""The answer of pick as text, table, document and picture, and the command around it."""
+
+import json
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pytest
+from click.testing import CliRunner
+from matplotlib.figure import Figure
+
+from sunbot.cli import cli
+from sunbot.inputs import load_robot
+from sunbot.report.pick_plots import plot_frontier, plot_survival
+from sunbot.report.pick_text import pick_text
+from sunbot.report.progress import Progress, duration
+from sunbot.sky import weather_for
+from sunbot.studies import pick
+
+SITE = """
+name = "Invented knoll"
+latitude = 46.0
+longitude = 9.0
+time_zone = "Europe/Zurich"
+snow_days = 0
+[climate]
+ghi_kwh_m2_day = [1.2, 2.0, 3.2, 4.3, 5.1, 5.8, 6.0, 5.2, 3.8, 2.4, 1.4, 1.0]
+temp_min_c = [-2, -1, 2, 6, 10, 14, 16, 15, 12, 7, 2, -1]
+temp_max_c = [5, 7, 12, 16, 20, 25, 27, 26, 22, 16, 9, 5]
+wind_m_s = 2.0
+"""
+ROBOT = """
+name = "Invented post"
+site = "site.toml"
+heading_deg = 180
+[target]
+survival = 0.6
+[[panel]]
+name = "lid"
+watts = 40
+vmp_v = 18.0
+tilt_deg = 40
+mass_kg = 3.0
+[battery]
+chemistry = "li-ion"
+cells_in_series = 3
+capacity_ah = 20
+mass_kg = 2.0
+[[rail]]
+name = "logic"
+kind = "step-down"
+volts = 5.0
+[[load]]
+name = "logger"
+rail = "logic"
+watts = 1.0
+"""
+
+
+@pytest.fixture(scope="module")
+def robot_file(tmp_path_factory):
+    folder = tmp_path_factory.mktemp("knoll")
+    (folder / "site.toml").write_text(SITE, encoding="utf-8")
+    (folder / "robot.toml").write_text(ROBOT, encoding="utf-8")
+    return folder / "robot.toml"
+
+
+@pytest.fixture(scope="module")
+def result(robot_file):
+    robot = load_robot(robot_file)
+    weather = weather_for(robot.site, years=2, seed=1)
+    return pick(robot, watts=(1.0, 40.0, 60.0, 80.0), weather=weather, also=("map",))
+
+
+def run(robot_file, *options):
+    return CliRunner().invoke(cli, ["pick", str(robot_file), "--years", "2", *options])
+
+
+def test_the_text_leads_with_the_pair_and_lists_every_wattage(result):
+    """The pair and why first, then its neighbours, the frontier, the arithmetic beside it."""
+    text = pick_text(result)
+    taken = result.recommended
+    assert f"take {taken.watts:.4g} W of panel and {taken.battery_ah:.4g} Ah" in text
+    assert text.index("why:") < text.index("One step beside it") < text.index("The smallest battery for each panel")
+    assert "none in range" in text
+    assert "autonomy days" in text
+    assert "mass kg" in text
+    assert max(len(line) for line in text.splitlines()) < 110
+
+
+def test_the_plots_draw_the_pairs_with_units_on_the_axes(result):
+    """Frontier: a point for each pair; map: a field for each pair tried."""
+    upper, lower = Figure().subplots(2, 1)
+    have = [pair for pair in result.pairs if pair.battery_ah is not None]
+    plot_frontier(upper, result)
+    assert list(upper.lines[0].get_ydata()) == [pair.battery_ah for pair in have]
+    assert upper.get_xlabel() == "panel [W]"
+    assert upper.get_ylabel() == "battery when new [Ah]"
+    plot_survival(lower, result)
+    assert lower.collections[0].get_array().size == result.survival_map.survival.size
+    assert lower.get_ylabel() == "battery when new [Ah]"
+
+
+def test_the_command_prints_one_document_and_writes_table_and_picture(robot_file, tmp_path):
+    """JSON alone on stdout, cautions on stderr, a table of the pairs, a PNG; exit code 0."""
+    csv, plot = tmp_path / "pairs.csv", tmp_path / "pairs.png"
+    done = run(robot_file, "--watts", "40:80:40", "--json", "--csv", str(csv), "--plot", str(plot))
+    assert done.exit_code == 0, done.output
+    document = json.loads(done.stdout)
+    assert [pair["watts"] for pair in document["pairs"]] == [40.0, 80.0]
+    assert document["inputs"]["years"] == 2
+    assert csv.read_text(encoding="utf-8").startswith("watts,battery_ah,survival,confirmed,work_done,mass_kg,price\n")
+    assert plot.read_bytes().startswith(b"\x89PNG")
+
+
+def test_no_pair_in_range_is_exit_code_three(robot_file):
+    """A build job can gate on it."""
+    done = run(robot_file, "--watts", "0.5,1", "--battery-ah", "1:2")
+    assert done.exit_code == 3
+    assert "NONE of the pairs" in done.stdout
+
+
+@pytest.mark.parametrize(
+    ("options", "says"),
+    [
+        (("--watts", "10-120"), "--watts 10-120: '10-120' is not a number. Write LOW:HIGH:STEP"),
+        (("--watts", "10:120"), "3 numbers are needed between colons, here are 2"),
+        (("--watts", "120:10:10"), "10 is below 120"),
+        (("--watts", "0:50:10"), "0 is not above 0"),
+        (("--watts", "1:1000:1"), "at most 200"),
+        (("--watts", "nan"), "nan is not above 0"),
+        (("--battery-ah", "5"), "2 numbers are needed between colons, here are 1. Write LOW:HIGH"),
+        (("--battery-ah", "60:5"), "5 is not above 60"),
+        (("--plot", "pairs.txt"), "no plot can be written in this format"),
+    ],
+)
+def test_wrong_ranges_say_what_to_write(robot_file, options, says):
+    """Exit code 2, nothing on stdout, the option and the remedy in the message."""
+    done = run(robot_file, *options)
+    assert done.exit_code == 2
+    assert done.stdout == ""
+    assert says in done.stderr
+
+
+class Terminal:
+    """A stream that says it is a terminal, or not."""
+
+    def __init__(self, tty):
+        self.tty, self.text = tty, ""
+
+    def isatty(self):
+        return self.tty
+
+    def write(self, text):
+        self.text += text
+
+    def flush(self):
+        pass
+
+
+def test_progress_shows_on_a_terminal_only_and_only_after_a_second(monkeypatch):
+    """The time left is what the rest takes at the pace so far; the line is wiped at the end."""
+    now = [100.0]
+    monkeypatch.setattr(time, "monotonic", lambda: now[0])
+    seen = {}
+    for tty in (True, False):
+        now[0] = 100.0
+        stream = Terminal(tty)
+        with Progress(stream) as progress:
+            now[0] = 100.5
+            progress(0.05)
+            assert stream.text == ""
+            now[0] = 110.0
+            progress(0.25)
+            seen[tty] = stream.text
+        assert stream.text == "" or stream.text.endswith("\r")
+    assert "25%, about 30 s left" in seen[True]
+    assert seen[False] == ""
+    assert duration(300) == "5 min"
+
+
+def test_an_interrupt_ends_at_once_and_leaves_no_half_file(robot_file, tmp_path):
+    """Ctrl-C: exit code 130 within a second, no file, no traceback."""
+    out = tmp_path / "pairs.csv"
+    command = [sys.executable, "-m", "sunbot", "pick", str(robot_file), "--watts", "20:200:1", "--years", "60"]
+    with subprocess.Popen(
+        [*command, "--csv", str(out)], stdout=subprocess.PIPE, stderr=subprocess.PIPE, cwd=Path.cwd(), text=True
+    ) as running:
+        time.sleep(3.0)
+        assert running.poll() is None
+        asked = time.monotonic()
+        running.send_signal(signal.SIGINT)
+        stdout, stderr = running.communicate(timeout=20)
+        took_s = time.monotonic() - asked
+    assert running.returncode == 130
+    assert took_s < 1.0
+    assert stdout == ""
+    assert "Interrupted" in stderr
+    assert "Traceback" not in stderr
+    assert list(tmp_path.iterdir()) == []
