@@ -120,9 +120,11 @@ def plot_calendar(ax: Axes, result: SeasonResult) -> Axes:
     ax.set_xticks(np.arange(12), MONTH_NAMES)
     ax.set_xlim(-0.6, 11.6)
     ax.margins(y=0.25)
+    ax.set_ylim(0, None if calendar.possible else 1)
     ax.set_ylabel("work asked [minutes a day]")
     ax.legend(frameon=False, ncols=2, fontsize=8, loc="upper right")
-    ax.set_title("The work each month affords", loc="left", fontsize=10)
+    none = "" if calendar.possible else ": none, the target is missed without any"
+    ax.set_title(f"The work each month affords{none}", loc="left", fontsize=10)
     return ax
 
 

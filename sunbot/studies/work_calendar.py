@@ -138,37 +138,49 @@ class _Trial:
 
 def _fill(trial: _Trial) -> tuple[IntArray, BoolArray, bool]:
     """Steps by month, which months bind, and whether any calendar meets the target."""
-    steps = np.zeros(12, dtype=np.int64)
-    together = trial.verdict(np.where(trial.works, np.arange(trial.top + 1)[:, None], 0))
-    if not together.target_met[0]:
+    steps = _raised(trial, np.zeros(12, dtype=np.int64), np.where(trial.works, trial.top, 0))
+    if not steps.any() and not trial.verdict(steps[None, :]).target_met[0]:
         return steps, trial.works.copy(), False
-    # A month's own work, all months raised alike, tells where it will bind: the first path stops there.
-    enough = ~(together.month_work_done < trial.robot.target.work_done - 1e-9)
-    steps = _raised(trial, steps, np.where(trial.works, np.cumprod(enough, axis=1).sum(axis=1) - 1, 0))
     can_rise = _can_rise(trial, steps)
     for _ in range(_MOST_ROUNDS):
         if not can_rise.any():
             break
         raised = _raised(trial, steps, np.where(can_rise, trial.top, steps))
         if (raised == steps).all():
-            # Each can rise alone, not all together: the lowest goes first.
-            lowest = np.argmin(np.where(can_rise, steps, trial.top))
-            raised = _raised(trial, steps, np.where(np.arange(12) == lowest, trial.top, steps))
+            raised = _some_raised(trial, steps, np.flatnonzero(can_rise))
         steps = raised
         can_rise = _can_rise(trial, steps)
     return steps, trial.works & (steps < trial.top) & ~can_rise, True
 
 
 def _raised(trial: _Trial, steps: IntArray, caps: IntArray) -> IntArray:
-    """Raise all months that stand below their cap, the lowest first and then together, as long as the target is met."""
+    """Raise all months that stand below their cap, the lowest first and then together, until each of them binds.
+
+    Where work falls short along that path, each month's own work tells where it will bind; the rest then go on to
+    there, as long as the target is met.
+    """
+    reached, ends = _along(trial, steps, caps)
+    return reached if (ends == caps).all() else _along(trial, reached, np.maximum(ends, reached))[0]
+
+
+def _along(trial: _Trial, steps: IntArray, caps: IntArray) -> tuple[IntArray, IntArray]:
+    """The last calendar on the path from steps to caps that meets the target, and where each month's own work ends."""
     rising = caps > steps
     if not rising.any():
-        return steps
+        return steps, caps
     levels = np.arange(steps[rising].min() + 1, caps[rising].max() + 1)
-    path = np.clip(levels[:, None], steps, np.maximum(caps, steps))
-    met = trial.verdict(path).target_met
-    passed = int(np.argmin(met)) if not met.all() else met.size
-    return steps if passed == 0 else np.asarray(path[passed - 1])
+    path = np.vstack([steps, np.clip(levels[:, None], steps, np.maximum(caps, steps))])
+    verdict = trial.verdict(path[1:])
+    enough = ~(verdict.month_work_done < trial.robot.target.work_done - 1e-9)
+    ends = path[np.cumprod(enough, axis=1).sum(axis=1), np.arange(12)]
+    return path[np.cumprod(verdict.target_met).sum()], np.where(rising, ends, caps)
+
+
+def _some_raised(trial: _Trial, steps: IntArray, months: IntArray) -> IntArray:
+    """Where each of some months could take one step, but not all of them: as many as can, the lowest first."""
+    order = months[np.argsort(steps[months], kind="stable")]
+    path = np.vstack([steps, steps + np.cumsum(np.eye(12, dtype=np.int64)[order], axis=0)])
+    return np.asarray(path[np.cumprod(trial.verdict(path[1:]).target_met).sum()])
 
 
 def _can_rise(trial: _Trial, steps: IntArray) -> BoolArray:
