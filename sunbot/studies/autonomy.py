@@ -79,7 +79,7 @@ def darkest_week_w(offer_w: FloatArray, step_h: FloatArray, *, ring: bool) -> fl
     """
     years = [(watts[hours > 0], hours[hours > 0]) for watts, hours in zip(offer_w.T, step_h.T, strict=True)]
     if ring:
-        years = [tuple(np.concatenate(parts) for parts in zip(*years, strict=True))]
+        years = [(np.concatenate([watts for watts, _ in years]), np.concatenate([hours for _, hours in years]))]
     return max(0.0, min(_least_mean_w(watts, hours, ring=ring) for watts, hours in years))
 
 
