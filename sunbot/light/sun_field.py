@@ -27,7 +27,7 @@ class SunField:
     hour : (n_hours,) middles of the steps. month : (365,). up : (365, n_hours) above the level horizon.
     behind_horizon : (365, n_hours) up, but below the site's horizon.
     behind_robot : (365, n_hours) share of the first panel's direct light that masts and arms take while the sun is
-    clear of the horizon; mean over the headings of a robot that roams. Else 0.
+    clear of the horizon; mean over all headings it may take. Else 0.
     """
 
     hour: FloatArray
