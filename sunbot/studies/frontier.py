@@ -21,7 +21,7 @@ BRACKET_BELOW, BRACKET_ABOVE = 0.5, 2.5
 that is wrong: upwards for losses and frost, downwards where skippable work may give way."""
 LEAST_H, MOST_H = 0.5, 60 * 24.0
 """Batteries that hold from half an hour to sixty days of the mean need are tried when no range is given."""
-WIDTH = 16
+WIDTH = 14
 """Batteries tried at once for each panel."""
 
 

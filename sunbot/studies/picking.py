@@ -21,15 +21,13 @@ from .chain import Chain
 from .effort import Effort, Watcher, balance_cost, supply_cost
 from .frontier import WIDTH, Frontier, Judged
 from .inputs_used import inputs_used
+from .ladder import STEPS_UP, Ladder
 from .pick_result import ControllerOption, Neighbour, Pair, PickResult, Recommended, SurvivalMap
 from .resizing import resized
 
 USUAL_X = (0.5, 0.75, 1.0, 1.25, 1.5, 2.0, 2.5, 3.0, 4.0, 5.0, 6.0, 8.0)
 """Panels tried when none are named, as multiples of the one filed."""
 KINDS: tuple[Literal["direct", "pwm", "mppt"], ...] = ("direct", "pwm", "mppt")
-STEP_UP, STEPS_UP = 1.05, 24
-"""How the battery is raised when other years ask for more than the years it was sized on."""
-NEIGHBOUR_STEP = 1.1
 MAP_ROWS = 16
 UNITS = {"mass_kg": "kg", "price": "in the file's money"}
 
@@ -117,22 +115,17 @@ class _Search:
             if chosen is None:
                 return _Found(frontier, pairs, None, ())
             have = np.array([at for at, pair in enumerate(pairs) if pair.battery_ah is not None])
-            at, steps_ah = pairs.index(chosen[0]), _raised(chosen[0].battery_ah or 0.0)
-            others.ask(
-                (np.append(have, np.full(STEPS_UP, at)), np.append([pairs[k].battery_ah for k in have], steps_ah))
-            )
-            neighbours = _neighbours(frontier, at, float(steps_ah[0]))
+            sized_ah = np.array([pairs[at].battery_ah for at in have])
+            ladder = Ladder(frontier, pairs.index(chosen[0]), float(chosen[0].battery_ah or 0.0))
+            others.ask((np.append(have, np.full(STEPS_UP, ladder.at)), np.append(sized_ah, ladder.up_ah)))
+            ladder.climb()
             there = others.answer()
-        if there is None:
-            return _Found(frontier, pairs, _recommended(chosen, frontier, at, None), neighbours)
-        confirmed = dict(zip(have.tolist(), there, strict=False))
-        pairs = tuple(
-            replace(pair, confirmed=confirmed[k].survival) if k in confirmed else pair for k, pair in enumerate(pairs)
-        )
-        taken = _recommended(chosen, frontier, at, there[-STEPS_UP:])
-        if taken.battery_ah != steps_ah[0]:
-            neighbours = _neighbours(frontier, at, taken.battery_ah)
-        return _Found(frontier, pairs, taken, neighbours)
+        most_ah = np.inf if self.battery_ah is None else self.battery_ah[1]
+        taken, step = ladder.taken(chosen[1], None if there is None else there[-STEPS_UP:], most_ah=most_ah)
+        if there is not None:
+            confirmed = {int(at): pair.survival for at, pair in zip(have, there, strict=False)}
+            pairs = tuple(replace(pair, confirmed=confirmed.get(at)) for at, pair in enumerate(pairs))
+        return _Found(frontier, pairs, taken, ladder.neighbours(step))
 
 
 def _other_years(chain: Chain, robot: Robot, sizes: FloatArray) -> Callable[[Asked], list[Judged] | None]:
@@ -160,10 +153,10 @@ def _must_be_range(battery_ah: tuple[float, float] | None) -> None:
 
 
 def _planned(weather: Weather, sizes: int, also: Collection[str]) -> float:
-    """Work ahead, as `Effort` counts it: the supply, two rounds of the search, the neighbours."""
+    """Work ahead, as `Effort` counts it: the supply, two rounds of the search, the steps of the chosen pair."""
     steps, years = round(8760 / weather.step_h), weather.n_years
     cost = supply_cost(len(weather.table), sizes) + 2 * balance_cost(steps, years * sizes * WIDTH)
-    cost += balance_cost(steps, years * 4)
+    cost += balance_cost(steps, years * 3 * STEPS_UP)
     whole = cost * (len(KINDS) if "controllers" in also else 1)
     return whole + (balance_cost(steps, years * sizes * MAP_ROWS) if "map" in also else 0.0)
 
@@ -183,13 +176,6 @@ def _sized(frontier: Frontier, capacity_ah: FloatArray) -> tuple[Pair, ...]:
             price=_total(sized, "price"),
         )
     return tuple(pairs)
-
-
-def _raised(battery_ah: float) -> FloatArray:
-    """A battery and the steps above it, to four significant digits."""
-    steps = battery_ah * STEP_UP ** np.arange(STEPS_UP)
-    scale = 10.0 ** (3 - np.floor(np.log10(steps)))
-    return np.asarray(np.ceil(steps * scale - 1e-6) / scale)
 
 
 def _total(robot: Robot, name: str) -> float | None:
@@ -215,48 +201,6 @@ def _choose(pairs: tuple[Pair, ...]) -> tuple[Pair, str] | None:
     return best, (
         "from here on a larger panel saves less battery, in per cent, than it adds panel, and a smaller one costs more "
         "(the file gives neither mass nor price of both panel and battery to weigh them by)"
-    )
-
-
-def _recommended(chosen: tuple[Pair, str], frontier: Frontier, at: int, there: list[Judged] | None) -> Recommended:
-    """The chosen pair, its battery raised in steps until other years bear it out too."""
-    pair, why = chosen
-    steps_ah = _raised(pair.battery_ah or 0.0)
-    here = partial(frontier.judge, np.array([at]))
-    if there is None:
-        return Recommended(pair.watts, float(steps_ah[0]), here(steps_ah[:1])[0].survival, None, why)
-    borne_out = (step for step in range(STEPS_UP) if there[step].met)
-    step = next((step for step in borne_out if here(steps_ah[[step]])[0].met), None)
-    if step is None:
-        why += "; but other years of the same climate do not bear it out, nor any battery up to three times as large"
-        step = 0
-    elif step > 0:
-        why += f"; raised from {pair.battery_ah:.4g} Ah because other years of the same climate asked for more"
-    survival = here(steps_ah[[step]])[0].survival
-    return Recommended(pair.watts, float(steps_ah[step]), survival, there[step].survival, why)
-
-
-def _neighbours(frontier: Frontier, at: int, battery_ah: float) -> tuple[Neighbour, ...]:
-    """One step of panel or battery to either side of a pair."""
-    smaller, larger = (float(f"{battery_ah * x:.4g}") for x in (1 / NEIGHBOUR_STEP, NEIGHBOUR_STEP))
-    beside = [
-        ("smaller panel", at - 1, battery_ah),
-        ("larger panel", at + 1, battery_ah),
-        ("smaller battery", at, smaller),
-        ("larger battery", at, larger),
-    ]
-    beside = [step for step in beside if 0 <= step[1] < frontier.sizes.size]
-    judged = frontier.judge(np.array([step[1] for step in beside]), np.array([step[2] for step in beside]))
-    return tuple(
-        Neighbour(
-            step=name,
-            watts=float(frontier.sizes[index]),
-            battery_ah=capacity,
-            survival=pair.survival,
-            work_done=None if np.isnan(pair.work_done) else pair.work_done,
-            target_met=pair.met,
-        )
-        for (name, index, capacity), pair in zip(beside, judged, strict=True)
     )
 
 
