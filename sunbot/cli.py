@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import os
+import signal
 import sys
+import threading
 from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, TypeVar
@@ -20,6 +22,9 @@ F = TypeVar("F", bound=Callable[..., Any])
 
 TARGET_NOT_MET = 3
 INTERRUPTED = 130
+INTERRUPTED_NOTE = "\nInterrupted: nothing was written."
+UNWOUND_S = 0.6
+"""How long an interrupted command may take to unwind, before it is ended by force."""
 MOST_SIZES = 200
 ROBOT_OR_SITE_FILE = click.Path(path_type=Path)
 OUT_FILE = click.Path(dir_okay=False, path_type=Path)
@@ -43,7 +48,7 @@ class Commands(click.Group):
         except InputError as error:
             raise WrongInput(str(error)) from error
         except KeyboardInterrupt as error:
-            click.echo("\nInterrupted: nothing was written.", err=True)
+            click.echo(INTERRUPTED_NOTE, err=True)
             raise click.exceptions.Exit(INTERRUPTED) from error
 
 
@@ -308,8 +313,22 @@ def _note(text: str) -> None:
     click.echo(text, err=True)
 
 
+def _interrupted(*_: Any) -> None:
+    """Unwind, so that half files go; end by force where threads at work would hold the process up."""
+
+    def end() -> None:
+        click.echo(INTERRUPTED_NOTE, err=True)
+        os._exit(INTERRUPTED)
+
+    timer = threading.Timer(UNWOUND_S, end)
+    timer.daemon = True
+    timer.start()
+    raise KeyboardInterrupt
+
+
 def main() -> None:
     """Entry point of the ``sunbot`` command."""
+    signal.signal(signal.SIGINT, _interrupted)
     try:
         cli(prog_name="sunbot")
     except SystemExit as end:

@@ -76,7 +76,7 @@ def supply(
     def work(within: slice) -> None:
         lit = samples(lights, weather, arrays, within=within)
         if lit is not None:
-            for whole, part in zip(made, plant.run(lit), strict=False):
+            for whole, part in zip(made, plant.run(lit, accounts=accounts), strict=True):
                 whole[lit.rows] = part
 
     with ThreadPoolExecutor(_THREADS) as pool:
@@ -174,10 +174,10 @@ class _Plant:
     volts: tuple[float, ...]
     _tables: dict[tuple[int, float, float], FloatArray] = field(default_factory=dict)
 
-    def run(self, lit: Samples) -> tuple[FloatArray, ...]:
-        """Offered, panel and wire power, each (n_lit, n_watts, n_volts)."""
+    def run(self, lit: Samples, *, accounts: bool) -> tuple[FloatArray, ...]:
+        """Offered, and with ``accounts`` panel and wire power, each (n_lit, n_watts, n_volts)."""
         shape = (len(lit.rows), len(self.scales), len(self.volts))
-        made = tuple(np.empty(shape) for _ in range(3))
+        made = tuple(np.empty(shape) for _ in range(3 if accounts else 1))
         mppt = self.controller.kind == "mppt"
         trackers = self._trackers(lit) if mppt else []
         for i, scale in enumerate(self.scales):
@@ -188,7 +188,7 @@ class _Plant:
                 else:
                     panel_w, wire_w, offer_w = self._coupled(lit, scale=scale, volts=volts)
                 self._limit(offer_w, panel_w, wire_w, volts=volts)
-                for whole, part in zip(made, (offer_w, panel_w, wire_w), strict=True):
+                for whole, part in zip(made, (offer_w, panel_w, wire_w), strict=False):
                     whole[:, i, j] = lit.mean(part)
         return made
 

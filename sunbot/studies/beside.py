@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import ctypes
 import multiprocessing
 import signal
 import sys
@@ -14,6 +15,9 @@ from typing import Any, Generic, Protocol, TypeVar, cast
 
 Q = TypeVar("Q")
 A = TypeVar("A")
+
+_DIE_WITH_PARENT = 1
+"""PR_SET_PDEATHSIG of Linux, prctl(2)."""
 
 Ready = Callable[[], Callable[[Q], A]]
 """Does the preparing, which may take long, and returns what answers questions."""
@@ -115,6 +119,8 @@ class _Fork:
 def _serve(ready: Ready[Any, Any], pipe: Connection) -> None:
     """Answer until the caller is gone."""
     signal.signal(signal.SIGINT, signal.SIG_DFL)
+    # The kernel ends a child at work when its parent ends in whatever way.
+    ctypes.CDLL(None).prctl(_DIE_WITH_PARENT, signal.SIGKILL)
     try:
         answer = ready()
         while True:

@@ -107,9 +107,10 @@ class _Search:
 
     def of(self, robot: Robot) -> _Found:
         """Pairs, the one to take and its neighbours, for one robot; other years are tried beside."""
+        # The supply uses all cores by itself; the search after it leaves one to the other years.
+        frontier = Frontier(self.chain, robot, self.sizes, effort=self.effort)
+        self.effort.did(supply_cost(len(self.chain.weather.table), self.sizes.size))
         with Beside(partial(_other_years, self.chain, robot, self.sizes)) as others:
-            frontier = Frontier(self.chain, robot, self.sizes, effort=self.effort)
-            self.effort.did(supply_cost(len(self.chain.weather.table), self.sizes.size))
             pairs = _sized(frontier, frontier.smallest_batteries(self.battery_ah))
             chosen = _choose(pairs)
             if chosen is None:

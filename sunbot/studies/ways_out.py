@@ -25,6 +25,7 @@ PANEL_STEPS = np.array([1.0, 1.04, 1.12])
 """Panels held against their own supply, above the one that as much more light would ask for."""
 LOADS_X = np.geomspace(1 / 30, 1.5, 48)
 """Extra loads tried, as multiples of the mean load asked: to 9 %."""
+FEW_YEARS = 5
 TILTS_DEG = np.arange(0.0, 91.0, 15.0)
 TILT_YEARS = 3
 
@@ -119,19 +120,23 @@ class Nearness:
 
 def nearness(chain: Chain, robot: Robot) -> Nearness:
     """How close the robot is to the other answer, whichever its own is."""
-    if verdict_on(chain.run(robot, keep="verdict"), robot.target).target_met[0]:
-        return Nearness((), _extra_load_w(chain, robot))
-    return Nearness(_ways_out(_Levers.of(chain, robot)), None)
+    # Over many years a robot that fails is told apart first: with more load it would be cut often, which is slow.
+    many_years = chain.weather.n_years > FEW_YEARS
+    if many_years and not verdict_on(chain.run(robot, keep="verdict"), robot.target).target_met[0]:
+        return Nearness(_ways_out(_Levers.of(chain, robot)), None)
+    extra_w = _extra_load_w(chain, robot)
+    return Nearness(() if extra_w is not None else _ways_out(_Levers.of(chain, robot)), extra_w)
 
 
-def _extra_load_w(chain: Chain, robot: Robot) -> float:
-    """Largest extra load tried up to which every smaller one fits."""
+def _extra_load_w(chain: Chain, robot: Robot) -> float | None:
+    """Largest extra load tried up to which every smaller one fits; None where not even the robot as filed does."""
     asked = chain.demand(robot)
-    extra_w = LOADS_X * float(asked.essential.total_w.mean() + asked.work.total_w.sum(axis=1).mean())
+    mean_w = float(asked.essential.total_w.mean() + asked.work.total_w.sum(axis=1).mean())
+    extra_w = mean_w * np.concatenate(([0.0], LOADS_X))
     many = repeated(as_filed(robot, n_levels=len(asked.level_loads)), extra_w.size)
     balance = chain.run(robot, replace(many, extra_w=extra_w), keep="verdict")
     fits = int(np.cumprod(verdict_on(balance, robot.target).target_met).sum())
-    return float(extra_w[fits - 1]) if fits else 0.0
+    return float(extra_w[fits - 1]) if fits else None
 
 
 def _ways_out(levers: _Levers) -> tuple[WayOut, ...]:

@@ -133,7 +133,7 @@ def test_elsewhere_the_laws_are_broken_by_under_three_per_cent_of_robots(robots,
         filed = robots.random_robot(rng, skippable=kind == "skippable work", chemistries=chemistries)
         sizes = filed.watts * np.array([0.6, 1.0, 1.5, 2.5, 4.0])
         frontier = Frontier(Chain(place), filed, sizes, effort=Effort(None, 1.0))
-        watts_at, battery_ah = np.meshgrid(np.arange(5), np.geomspace(1.0, 120.0, 8))
+        watts_at, battery_ah = np.meshgrid(np.arange(5), np.geomspace(1.0, 120.0, 32))
         judged = frontier.judge(watts_at.ravel(), battery_ah.ravel())
         survival = np.array([pair.survival for pair in judged]).reshape(watts_at.shape)
         met = np.array([pair.met for pair in judged]).reshape(watts_at.shape)

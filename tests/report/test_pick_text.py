@@ -184,7 +184,7 @@ def test_progress_shows_on_a_terminal_only_and_only_after_a_second(monkeypatch):
 def test_an_interrupt_ends_at_once_and_leaves_no_half_file(robot_file, tmp_path):
     """Ctrl-C: exit code 130 within a second, no file, no traceback."""
     out = tmp_path / "pairs.csv"
-    command = [sys.executable, "-m", "sunbot", "pick", str(robot_file), "--watts", "20:200:1", "--years", "60"]
+    command = [sys.executable, "-m", "sunbot", "pick", str(robot_file), "--watts", "20:130:10", "--years", "100"]
     with subprocess.Popen(
         [*command, "--csv", str(out)], stdout=subprocess.PIPE, stderr=subprocess.PIPE, cwd=Path.cwd(), text=True
     ) as running:

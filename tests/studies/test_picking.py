@@ -175,10 +175,10 @@ def test_the_watcher_is_told_shares_that_end_near_the_whole(robots, place):
 
 
 def grid_of(robots, place, filed):
-    """Survival and met over 5 panels and 8 batteries, (n_ah, n_watts)."""
+    """Survival and met over 5 panels and 20 batteries, (n_ah, n_watts)."""
     sizes = filed.watts * np.array([0.6, 1.0, 1.5, 2.5, 4.0])
     frontier = Frontier(Chain(place), filed, sizes, effort=Effort(None, 1.0))
-    ah = np.geomspace(1.0, 120.0, 8)
+    ah = np.geomspace(1.0, 120.0, 20)
     watts_at, capacity = np.meshgrid(np.arange(5), ah)
     judged = frontier.judge(watts_at.ravel(), capacity.ravel())
     survival = np.array([pair.survival for pair in judged]).reshape(watts_at.shape)
@@ -187,7 +187,7 @@ def grid_of(robots, place, filed):
 
 @pytest.mark.parametrize("seed", range(12))
 def test_more_panel_or_battery_never_harms_without_skippable_loads(robots, place, seed):
-    """More Ah never lose survival, and more watts never ask for more battery: 12 random robots, 40 designs each."""
+    """More Ah never lose survival, and more watts never ask for more battery: 12 random robots, 100 designs each."""
     survival, met = grid_of(robots, place, robots.random_robot(np.random.default_rng(seed)))
     assert (np.diff(survival, axis=0) >= 0).all()
     smallest = np.where(met.any(axis=0), met.argmax(axis=0), len(met))
