@@ -1,10 +1,10 @@
 """Chemistries, the pack and the step-by-step balance: `Supply` and `Demand` in, `Balance` out."""
 
-from .balance import balance
 from .box import box_temp_c
 from .carriers import Balance, Designs, Ledger, Trace
 from .designs import as_filed, autonomy_h
 from .pack import Pack, battery_voltages, pack_of, resistance_ohm, usable_share, usable_wh
+from .ring import balance
 
 __all__ = [
     "Balance",

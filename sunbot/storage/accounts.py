@@ -5,8 +5,8 @@ from __future__ import annotations
 import numpy as np
 
 from ..types import FloatArray
+from .block import Block, Record, Tallies
 from .layout import OverVolts
-from .step import Block, Record, Tallies
 from .window import Parts, Window
 
 Sums = dict[str, FloatArray]

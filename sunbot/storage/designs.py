@@ -10,9 +10,9 @@ from ..calendar import Lanes
 from ..demand.carriers import Asked, Demand
 from ..harvest.carriers import Supply
 from ..inputs.robot import Robot
-from .balance import balance
 from .carriers import Designs
 from .pack import Pack
+from .ring import balance
 
 
 def as_filed(robot: Robot, n_levels: int) -> Designs:

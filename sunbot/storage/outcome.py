@@ -8,8 +8,8 @@ import numpy as np
 
 from ..types import BoolArray, FloatArray, IntArray
 from .accounts import Sums
+from .block import Block, Tallies
 from .carriers import Balance, Designs, Ledger, Trace
-from .step import Block, Tallies
 from .window import Source
 
 

@@ -16,12 +16,13 @@ from ..demand.carriers import Demand
 from ..harvest.carriers import Supply
 from ..types import BoolArray, FloatArray, IntArray
 from .accounts import Rows, Sums, add_demand, add_flows, trace_rows
+from .block import Block, Outages, Record, Tallies
 from .box import box_temp_c
 from .carriers import Balance, Designs
 from .layout import Layout, Volts
 from .outcome import Sheet, balance_of
 from .pack import Pack
-from .step import Block, Outages, Record, Tallies, step
+from .step import step
 from .window import Source, Window, window
 
 Keep = Literal["verdict", "months", "trace"]
