@@ -4,10 +4,10 @@ from __future__ import annotations
 
 import difflib
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from datetime import datetime
 from itertools import pairwise
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError, available_timezones
 
 from .fields import Path, Problem
@@ -16,6 +16,9 @@ if TYPE_CHECKING:
     from .robot import Battery, Controller, Deployment, Load, Panel, Rail, Robot
     from .site import Climate, Site, WeatherSource
     from .window import Window
+
+Row = tuple[Any, ...]
+"""From, to, and what holds in these hours."""
 
 MONTHS = ["January", "February", "March", "April", "May", "June"]
 MONTHS += ["July", "August", "September", "October", "November", "December"]
@@ -48,7 +51,7 @@ def site(site: Site) -> Iterator[Problem]:
     azimuths = [azimuth for azimuth, _ in site.horizon]
     if any(b <= a for a, b in pairwise(azimuths)):
         pairs = sorted(dict(site.horizon).items())
-        yield Problem(("horizon",), "its azimuths do not rise", f"horizon = {_pairs(pairs)}")
+        yield Problem(("horizon",), "its azimuths do not rise", f"horizon = {_rows(pairs)}")
 
 
 def _zone(name: str) -> ZoneInfo | None:
@@ -163,6 +166,7 @@ def panel(panel: Panel) -> Iterator[Problem]:
         if start == end:
             wrong = f"begins and ends at {start:g} deg"
             yield Problem(("obstructions", number), wrong, "from and to, clockwise, e.g. [170, 190, 60]")
+    yield from _spans(panel.tilt_hours, "tilt_hours")
 
 
 def controller(controller: Controller) -> Iterator[Problem]:
@@ -232,54 +236,69 @@ def load(load: Load) -> Iterator[Problem]:
             yield Problem((name,), f"names {doubles[0]} twice", f"each of the {name} once")
 
 
-def _spans(spans: tuple[tuple[float, float], ...], name: str, required: bool = False) -> Iterator[Problem]:
-    """Spans of the day lie within it, run forward and do not overlap."""
+def _spans(spans: Sequence[Row], name: str, required: bool = False) -> Iterator[Problem]:
+    """Spans of the day lie within it, run forward and do not overlap; what stands behind the hours is kept in words."""
     if required and not spans:
         yield Problem((name,), "is empty, so the load would never work", f"e.g. {name} = [[9, 17]], or leave it out")
-    for number, (start, end) in enumerate(spans):
-        if not (0 <= start <= 24 and 0 <= end <= 24):
-            wrong = f"[{start:g}, {end:g}] is outside the day"
-            yield Problem((name, number), wrong, "hours from 0 to 24, e.g. [9, 17] or [9.5, 11.25]")
-    if any(not 0 <= hour <= 24 for span in spans for hour in span):
+    outside = [number for number, (start, end, *_) in enumerate(spans) if not (0 <= start <= 24 and 0 <= end <= 24)]
+    for number in outside:
+        wrong = f"{_row(spans[number])} is outside the day"
+        yield Problem((name, number), wrong, "hours from 0 to 24, e.g. 9 and 17, or 9.5 and 11.25")
+    backward = [span for span in spans if span[0] >= span[1]]
+    if outside or backward:
+        if not outside:
+            wrong = f"{_row(backward[0])} does not run forward within the day"
+            yield Problem((name,), wrong, f"{name} = {_rows(_within_days(spans))}")
         return
-    backward = [(start, end) for start, end in spans if start >= end]
-    if backward:
-        start, end = backward[0]
-        wrong = f"[{start:g}, {end:g}] does not run forward within the day"
-        yield Problem((name,), wrong, f"{name} = {_pairs(_within_days(spans))}")
-        return
-    ordered = sorted(spans)
-    for (a, b), (c, d) in pairwise(ordered):
-        if c < b:
-            wrong = f"[{a:g}, {b:g}] and [{c:g}, {d:g}] overlap"
-            yield Problem((name,), wrong, f"them as one, e.g. [{a:g}, {max(b, d):g}]")
+    for first, second in pairwise(sorted(spans, key=lambda span: span[:2])):
+        if second[0] < first[1]:
+            end = max(first[1], second[1])
+            one = f"them as one, e.g. [{first[0]:g}, {end:g}]" if len(first) == 2 else "each hour in one of them only"
+            yield Problem((name,), f"{_row(first)} and {_row(second)} overlap", one)
 
 
-def _within_days(spans: tuple[tuple[float, float], ...]) -> list[tuple[float, float]]:
+def _within_days(spans: Sequence[Row]) -> list[Row]:
     """The same spans, those across midnight cut there; a span without length is taken as the whole day."""
-    cut: list[tuple[float, float]] = []
-    for start, end in spans:
-        if start == end:
-            cut += [(0.0, 24.0)]
-        elif start < end:
-            cut += [(start, end)]
-        else:
-            cut += [(a, b) for a, b in ((start, 24.0), (0.0, end)) if a < b]
+    cut: list[Row] = []
+    for start, end, *rest in spans:
+        parts = [(0.0, 24.0)] if start == end else [(start, end)] if start < end else [(start, 24.0), (0.0, end)]
+        cut += [(a, b, *rest) for a, b in parts if a < b]
     return cut
 
 
-def _pairs(pairs: list[tuple[float, float]]) -> str:
-    return "[" + ", ".join(f"[{a:g}, {b:g}]" for a, b in pairs) + "]"
+def _row(row: Row) -> str:
+    shown = (f'"{item}"' if isinstance(item, str) else f"{item:g}" for item in row if item is not None)
+    return f"[{', '.join(shown)}]"
+
+
+def _rows(rows: Sequence[Row]) -> str:
+    return f"[{', '.join(map(_row, rows))}]"
 
 
 def robot(robot: Robot) -> Iterator[Problem]:
-    """Names are unique, loads have rails, rails fit the battery, panels fit the controller."""
+    """Names are unique, loads have rails, rails fit the battery, panels fit the controller, hours do not overlap."""
+    yield from _headings(robot)
     for kind, parts in (("panel", robot.panels), ("rail", robot.rails), ("load", robot.loads)):
         yield from _unique(kind, [part.name for part in parts])
     yield from _load_rails(robot)
     for number, rail in enumerate(robot.rails):
         yield from _rail_voltage(rail, number, robot.battery)
     yield from _panels_on_controller(robot)
+
+
+def _headings(robot: Robot) -> Iterator[Problem]:
+    """Headings by hours: an angle behind "fixed" and behind nothing else."""
+    yield from _spans(robot.headings, "headings")
+    for number, row in enumerate(robot.headings):
+        *hours, heading, angle = row
+        without = _row((*hours, heading))
+        if heading == "fixed" and angle is None:
+            wrong = f"{without} does not say where the nose points"
+            fixed = _row((*hours, heading, 135))
+            yield Problem(("headings", number), wrong, f"the degrees from north, clockwise, behind it, e.g. {fixed}")
+        if heading != "fixed" and angle is not None:
+            wrong = f'{_row(row)} has an angle, which only "fixed" has'
+            yield Problem(("headings", number), wrong, f"{without}, or {_row((*hours, 'fixed', angle))}")
 
 
 def _unique(kind: str, names: list[str]) -> Iterator[Problem]:

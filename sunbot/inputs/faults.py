@@ -94,7 +94,7 @@ def _words(error: ErrorDetails, path: Path, model: type[Part]) -> tuple[str, str
         return unknown_key(str(path[-1]), owner, model)
     name = next(str(step) for step in reversed(error["loc"]) if isinstance(step, str))
     wrong = _WRONG.get(error["type"], _other)(error, field, rest)
-    return wrong, _hint(error, name, field) or remedy(name, field, rest)
+    return wrong, _hint(error, name, field, rest) or remedy(name, field, rest)
 
 
 def unknown_key(name: str, owner: type[Part], model: type[Part]) -> tuple[str, str]:
@@ -207,7 +207,7 @@ _WRONG: dict[str, Callable[[ErrorDetails, FieldInfo, Path], str]] = {
 }
 
 
-def _hint(error: ErrorDetails, name: str, field: FieldInfo) -> str:
+def _hint(error: ErrorDetails, name: str, field: FieldInfo, rest: Path) -> str:
     """A remedy that takes up what was written; empty where the key's own remedy says more."""
     value = error["input"]
     if error["type"] in ("float_type", "int_type") and isinstance(value, str) and _is_number(value):
@@ -215,7 +215,7 @@ def _hint(error: ErrorDetails, name: str, field: FieldInfo) -> str:
     if error["type"] == "string_too_long":
         return f"at most {error['ctx']['max_length']} letters"
     if error["type"] == "literal_error" and isinstance(value, str):
-        words = keys.choices(field)
+        words = keys.choices(field, rest)
         near = difflib.get_close_matches(value.lower(), words, n=1, cutoff=0.5)
         listed = ", ".join(keys.shown(word) for word in words)
         return f"{keys.shown(near[0])}; the choices are {listed}" if near else f"one of {listed}"

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from typing import Annotated, Any, Self
+from typing import Annotated, Any, Literal, Self
 
 from pydantic import (
     AfterValidator,
@@ -15,6 +15,7 @@ from pydantic import (
     Field,
     Strict,
     ValidationInfo,
+    WithJsonSchema,
     model_validator,
 )
 
@@ -114,3 +115,36 @@ Horizon = Annotated[
 
 Spans = tuple[tuple[Number, Number], ...]
 """[from, to] hours of the day, forward within it."""
+
+TiltSpans = tuple[tuple[Number, Number, Annotated[Number, Field(ge=0, le=90)]], ...]
+"""[from, to, tilt in degrees] by hours of the day."""
+
+Heading = Literal["fixed", "roams", "turns-to-sun"]
+
+
+def _with_angle(row: Any) -> Any:
+    """Only "fixed" has an angle behind it."""
+    return [*row, None] if isinstance(row, (list, tuple)) and len(row) == 3 else row
+
+
+HeadingSpans = tuple[
+    Annotated[
+        tuple[Number, Number, Heading, Turn | None],
+        BeforeValidator(_with_angle),
+        WithJsonSchema(
+            {
+                "type": "array",
+                "prefixItems": [
+                    {"type": "number", "minimum": 0, "maximum": 24},
+                    {"type": "number", "minimum": 0, "maximum": 24},
+                    {"type": "string", "enum": ["fixed", "roams", "turns-to-sun"]},
+                    {"type": "number", "minimum": -360, "maximum": 360},
+                ],
+                "minItems": 3,
+                "maxItems": 4,
+            }
+        ),
+    ],
+    ...,
+]
+"""[from, to, heading] by hours of the day, with the angle of the nose behind "fixed"."""

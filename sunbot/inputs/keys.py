@@ -84,24 +84,32 @@ def _rules(annotation: Any, metadata: list[Any]) -> Iterator[Any]:
         yield from rule.metadata if isinstance(rule, FieldInfo) else [rule]
 
 
-def limits(field: FieldInfo, positions: Path) -> dict[str, float]:
-    """Bounds of the value at list positions of a field, under ``gt``, ``ge``, ``lt``, ``le``."""
+def _item_at(field: FieldInfo, positions: Path) -> tuple[Any, list[Any]]:
+    """The type at list positions of a field, with the rules that stand beside it; None where there is no such item."""
     annotation, metadata = field.annotation, field.metadata
     for position in positions:
         items = _items(annotation)
         if not items:
-            return {}
+            return None, []
         endless = items[-1] is Ellipsis
         annotation, metadata = items[0] if endless else items[min(int(position), len(items) - 1)], []
+    return annotation, metadata
+
+
+def limits(field: FieldInfo, positions: Path) -> dict[str, float]:
+    """Bounds of the value at list positions of a field, under ``gt``, ``ge``, ``lt``, ``le``."""
+    annotation, metadata = _item_at(field, positions)
+    if annotation is None:
+        return {}
     found: dict[str, float] = {}
     for rule in _rules(annotation, metadata):
         found |= {name: getattr(rule, name) for name in ("gt", "ge", "lt", "le") if hasattr(rule, name)}
     return found
 
 
-def choices(field: FieldInfo) -> tuple[str, ...]:
-    """The words a key, or an item of its list, may be."""
-    annotation = field.annotation
+def choices(field: FieldInfo, positions: Path = ()) -> tuple[str, ...]:
+    """The words a key, or an item of its list at ``positions``, may be."""
+    annotation, _ = _item_at(field, positions)
     while get_origin(annotation) is not Literal:
         inner = [a for a in get_args(annotation) if a not in (type(None), Ellipsis)]
         if not inner:

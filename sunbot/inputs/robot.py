@@ -9,7 +9,23 @@ from pydantic import Field, model_validator
 
 from . import checks
 from .chemistries import REST_VOLTAGES, Chemistry, rest_voltage_v
-from .fields import Flag, Named, Number, Part, Problem, Share, Spans, Text, Turn, TwelveShares, Whole, key
+from .fields import (
+    Flag,
+    Heading,
+    HeadingSpans,
+    Named,
+    Number,
+    Part,
+    Problem,
+    Share,
+    Spans,
+    Text,
+    TiltSpans,
+    Turn,
+    TwelveShares,
+    Whole,
+    key,
+)
 from .site import Site
 from .window import Window
 
@@ -79,6 +95,11 @@ class Panel(Part):
     in_series: Whole = key(1, "panels in series", ge=1, le=1000, example=1)
     in_parallel: Whole = key(1, "such strings in parallel", ge=1, le=1000, example=1)
     tilt_deg: Number = key(..., "0 flat, 90 upright", unit="deg", ge=0, le=90, example=10)
+    tilt_hours: TiltSpans = key(
+        (),
+        "a folding lid: [from, to, tilt_deg] by hours of the local clock; tilt_deg holds in all others",
+        example=[[8, 17, 60]],
+    )
     azimuth_deg: Turn = key(0.0, "which way it leans, clockwise from the nose", unit="deg", example=180)
     rear: Literal["open", "deck", "insulated"] = key("deck", "how its rear sheds heat: open, deck or insulated")
     dirt_loss: TwelveShares = key(
@@ -96,6 +117,11 @@ class Panel(Part):
     def total_watts(self) -> float:
         """Name-plate power of all its panels [W]."""
         return self.watts * self.in_series * self.in_parallel
+
+    @property
+    def steepest_deg(self) -> float:
+        """The largest tilt it has at any hour [deg]."""
+        return max(self.tilt_deg, *(tilt for _, _, tilt in self.tilt_hours), 0.0)
 
     def problems(self) -> Iterator[Problem]:
         yield from checks.panel(self)
@@ -304,12 +330,16 @@ class Robot(Part):
 
     name: Named = key(..., "what people call it", example="Row scout")
     site: Site = key(..., "site file, relative to this one", example="site.toml")
-    heading: Literal["fixed", "roams", "turns-to-sun"] = key(
-        "fixed", "which way the nose points: fixed, roams or turns-to-sun"
-    )
+    heading: Heading = key("fixed", "which way the nose points: fixed, roams or turns-to-sun")
     heading_deg: Turn = key(0.0, "fixed: of the nose from north, clockwise", unit="deg", example=90)
-    parked: Literal["random", "mean", "worst"] = key(
-        "random", "roams: where it stands while nothing moves it: random, mean or worst"
+    headings: HeadingSpans = key(
+        (),
+        'another heading by hours of the local clock: [from, to, heading], the nose in degrees behind "fixed"; '
+        "heading holds in all others",
+        example=[[0, 9, "fixed", 135], [9, 16, "roams"]],
+    )
+    parked: Literal["random", "mean", "worst", "to-sun"] = key(
+        "random", "roams: where it stands while nothing moves it: random, mean, worst or to-sun"
     )
     target: Target = key(Target(), "what counts as success")
     deployment: Deployment | None = key(None, "the part of the year the robot is out; absent: all year")
@@ -346,6 +376,11 @@ class Robot(Part):
     def watts(self) -> float:
         """Name-plate power of all panels [W]."""
         return sum(panel.total_watts for panel in self.panels)
+
+    @property
+    def roams(self) -> bool:
+        """Whether it roams at any hour of the day."""
+        return self.heading == "roams" or any(heading == "roams" for _, _, heading, _ in self.headings)
 
     def problems(self) -> Iterator[Problem]:
         yield from checks.robot(self)

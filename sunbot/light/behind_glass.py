@@ -133,8 +133,10 @@ def _window_of(robot: Robot) -> Window:
 
 def _must_stand(robot: Robot) -> None:
     """Behind a window the place in the room decides, so a robot that does not keep it cannot be judged."""
-    if robot.heading != "fixed":
-        wrong = f'"{robot.heading}" behind a [window], where a robot that leaves its place leaves the light'
+    other = [rule for rule in (robot.heading, *(rule for _, _, rule, _ in robot.headings)) if rule != "fixed"]
+    if other or robot.headings:
+        rule = other[0] if other else "headings by hours"
+        wrong = f'"{rule}" behind a [window], where a robot that leaves its place leaves the light'
         raise InputError(Fault("robot file: heading", wrong, 'heading = "fixed" and the place where it charges'))
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -14,10 +15,11 @@ from ..types import FloatArray, IntArray
 from .behind_glass import behind_glass
 from .carriers import Light, LightYield, Sun
 from .glass import dirt_pass, snow_pass
-from .headings import N_HEADINGS, heading_matters, heading_weight, noses
+from .headings import heading_matters, heading_weight, noses
+from .hours import tilt_shares
 from .plane import SkyParts, sky_parts
 from .room import lamp_w_m2
-from .view import Factors, Run, View, light_through, open_air, runs_of, under_horizon
+from .view import Factors, Run, View, light_through, mixed, open_air, runs_of, under_horizon
 
 _ALL_ALIKE: FloatArray = np.ones((1, 1))
 
@@ -51,8 +53,7 @@ def lights_on(robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1) -> tup
     """
     outside = outside_of(robot.site, weather, sun)
     views = _views(robot, weather, sun)
-    snowed = weather.snow_covered if robot.window is None else None
-    kept = [(_clean(panel, weather, outside.month), snow_pass(panel.tilt_deg, snowed)) for panel in robot.panels]
+    kept = [(_clean(panel, weather, outside.month), _unsnowed(panel, robot, weather)) for panel in robot.panels]
     planes = [_filled(outside.left, view.plane, outside.runs) for view in views]
     cells = [
         _filled(outside.left, view.glass, outside.runs, times=dirt * snow)
@@ -68,7 +69,8 @@ def lights_on(robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1) -> tup
 def parked_otherwise(lights: tuple[Light, ...], robot: Robot, weather: Weather, *, seed: int = 1) -> tuple[Light, ...]:
     """The same lights with the weights of another ``robot.parked``; ``yearly`` stays that of the lights given.
 
-    For a robot that differs in nothing else: the light by heading does not depend on where it stands when parked.
+    For a robot that differs in nothing else: the light by heading does not depend on where it stands when parked. The
+    lights must have the heading that follows the sun where ``robot`` parks towards it.
     """
     cells = [light.cells_w_m2 for light in lights]
     weights = _weights(robot, weather, cells, runs=runs_of(weather.row), seed=seed)
@@ -94,12 +96,37 @@ def _views(robot: Robot, weather: Weather, sun: Sun) -> list[View]:
     """How each panel sees the sky."""
     if robot.window is not None:
         lamp = lamp_w_m2(robot.window, weather)
-        return [behind_glass(panel, robot, sun=sun, lamp_w_m2=lamp) for panel in robot.panels]
+
+        def indoors(panel: Panel) -> View:
+            return behind_glass(panel, robot, sun=sun, lamp_w_m2=lamp)
+
+        return [_at_its_tilts(panel, weather, indoors) for panel in robot.panels]
     nose_deg, any_nose = noses(robot, sun), np.zeros((1, 1))
-    return [
-        open_air(panel, robot.site, sun=sun, nose_deg=nose_deg if heading_matters(panel) else any_nose)
-        for panel in robot.panels
-    ]
+
+    def outdoors(panel: Panel) -> View:
+        return open_air(panel, robot.site, sun=sun, nose_deg=nose_deg if heading_matters(panel) else any_nose)
+
+    return [_at_its_tilts(panel, weather, outdoors) for panel in robot.panels]
+
+
+def _at_its_tilts(panel: Panel, weather: Weather, seen: Callable[[Panel], View]) -> View:
+    """The view of a panel, of a folding one the mean over the tilts it has within a step."""
+    shares = tilt_shares(panel, weather)
+    views = [seen(panel.model_copy(update={"tilt_deg": tilt_deg})) for tilt_deg in shares]
+    return mixed(views, list(shares.values()))
+
+
+def _unsnowed(panel: Panel, robot: Robot, weather: Weather) -> FloatArray | float:
+    """Share of each step in which no snow lies on the panel; a lid that folds up steeply sheds it."""
+    covered = weather.snow_covered
+    if robot.window is not None or covered is None:
+        return 1.0
+    shares = tilt_shares(panel, weather)
+    free = (
+        np.broadcast_to(share, weather.ref_times.shape)[weather.row] * snow_pass(tilt, covered)
+        for tilt, share in shares.items()
+    )
+    return np.asarray(sum(free))
 
 
 def _clean(panel: Panel, weather: Weather, month: IntArray) -> FloatArray:
@@ -123,7 +150,7 @@ def _weights(
     robot: Robot, weather: Weather, cells: list[FloatArray], *, runs: list[Run], seed: int
 ) -> list[FloatArray]:
     """Heading weights of each panel; one array for all for which heading matters."""
-    roaming = [light.shape[1] == N_HEADINGS for light in cells]
+    roaming = [light.shape[1] > 1 for light in cells]
     if not any(roaming):
         return [_ALL_ALIKE] * len(cells)
     watts = [panel.total_watts for panel in robot.panels]

@@ -84,6 +84,24 @@ def light_through(sky: SkyParts, factors: Factors, runs: list[Run]) -> Iterator[
         yield run, block
 
 
+def mixed(views: list[View], shares: list[FloatArray]) -> View:
+    """The view of a panel that has each of ``views`` for its share of a reference step, (n_rows or 1,) each."""
+    if len(views) == 1:
+        return views[0]
+
+    def one(stage: str) -> Factors:
+        parts = [getattr(view, stage) for view in views]
+        mean = {
+            name: sum(share[:, None] * getattr(part, name) for share, part in zip(shares, parts, strict=True))
+            for name in vars(parts[0])
+        }
+        return Factors(**mean)
+
+    opened = one("open")
+    bare = all(view.plane is view.open for view in views)
+    return View(opened, opened if bare else one("plane"), one("glass"))
+
+
 def under_horizon(sky: SkyParts, site: Site, *, sun: Sun, row: IntArray) -> SkyParts:
     """The same sky, its ground lit only by what the site's horizon leaves of sun and sky."""
     if not site.horizon:

@@ -22,7 +22,8 @@ Age = Literal["worn", "new"]
 Keep = Literal["verdict", "months", "trace"]
 T = TypeVar("T")
 
-PARKED = ("random", "mean", "worst")
+PARKED = ("random", "mean", "worst", "to-sun")
+"""Where it may stand when parked; the last has one heading more, which the others can do with."""
 SUPPLY_VOLTS, DEMAND_VOLTS = 5, 3
 """Battery voltages tabulated where something follows the battery: a panel bends with it, a rail is nearly straight."""
 
@@ -94,7 +95,7 @@ class Chain:
         """Light on each panel of ``robot``; where it stands when parked only changes the weights of its headings."""
 
         def make() -> tuple[Light, ...]:
-            for parked in PARKED:
+            for parked in PARKED if robot.parked != "to-sun" else ():
                 other = self._lights.find(_light_key(robot.model_copy(update={"parked": parked})))
                 if other is not None:
                     return parked_otherwise(other, robot, self.weather, seed=self.seed)
@@ -210,9 +211,17 @@ def _light_key(robot: Robot) -> Hashable:
     """All of a robot that its light depends on."""
     moving = tuple((load.hours, load.months, load.weekdays, load.clock) for load in robot.loads if load.moves)
     mounts = tuple(
-        (panel.tilt_deg, panel.azimuth_deg, panel.dirt_loss, panel.obstructions, panel.bypass_groups)
+        (
+            panel.tilt_deg,
+            panel.tilt_hours,
+            panel.azimuth_deg,
+            panel.dirt_loss,
+            panel.obstructions,
+            panel.bypass_groups,
+        )
         for panel in robot.panels
     )
     # behind a window the size of a panel decides how much of it the sun reaches
     sizes = () if robot.window is None else tuple(panel.total_watts for panel in robot.panels)
-    return (robot.site, robot.heading, robot.heading_deg, robot.parked, robot.window, moving, mounts, sizes)
+    ways = (robot.heading, robot.heading_deg, robot.headings, robot.parked)
+    return (robot.site, *ways, robot.window, moving, mounts, sizes)

@@ -218,7 +218,7 @@ def _what_ifs(chain: Chain, robot: Robot) -> tuple[float, float, float | None]:
     """Survival in light 10 and 15 % dimmer, and of a robot that roams but always parks the wrong way (else None)."""
     filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
     light_x, watts_at, offers = [DIM_LIGHT_X, COARSE_LIGHT_X], [0, 0], [chain.supply(robot)]
-    if robot.heading == "roams" and robot.parked != "worst":
+    if robot.roams and robot.parked != "worst":
         light_x, watts_at = [*light_x, 1.0], [*watts_at, 1]
         offers.append(chain.supply(robot.model_copy(update={"parked": "worst"}), accounts=False))
     designs = replace(

@@ -46,7 +46,16 @@ def year(make_weather):
 
 @pytest.fixture(scope="session")
 def make_robot():
-    def make(*panels, heading="fixed", heading_deg=0.0, parked="random", moves=True, hours=((9.0, 15.5),), **site):
+    def make(
+        *panels,
+        heading="fixed",
+        heading_deg=0.0,
+        headings=(),
+        parked="random",
+        moves=True,
+        hours=((9.0, 15.5),),
+        **site,
+    ):
         mounted = [panel if isinstance(panel, dict) else {"tilt_deg": float(panel)} for panel in panels]
         return Robot.model_validate(
             {
@@ -54,6 +63,7 @@ def make_robot():
                 "site": Site(name="invented", latitude=52.0, longitude=13.0, time_zone="Europe/Berlin", **site),
                 "heading": heading,
                 "heading_deg": heading_deg,
+                "headings": headings,
                 "parked": parked,
                 "panel": tuple(Panel(**({"name": f"p{i}", "watts": 40.0} | p)) for i, p in enumerate(mounted)),
                 "battery": Battery(chemistry="lifepo4", cells_in_series=4, capacity_ah=12.0),
