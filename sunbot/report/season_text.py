@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from .spells_text import spells_text
 from .text import MONTH_NAMES, cautions_text, check_head, months_text
+from .window_text import window_text
 
 if TYPE_CHECKING:
     from ..studies.seasons import SeasonResult
@@ -26,6 +27,7 @@ def season_text(result: SeasonResult) -> str:
         _mount(result),
         _headings(result),
         _sun(result),
+        "" if result.window is None else window_text(result.window),
         _levers(result),
         cautions_text(result.cautions),
     ]

@@ -14,6 +14,7 @@ from ..inputs.robot import Robot
 from ..light import SunField, sun_field
 from ..sky import Weather, weather_for
 from ..types import Caution, FloatArray
+from .behind_window import BehindWindow, behind_window
 from .chain import Chain
 from .checking import CheckResult, check_on
 from .dark_spells import SPELL_DAYS, DarkSpell, dark_spells, days_of
@@ -49,7 +50,7 @@ class SeasonResult:
     charge_fan : DataFrame by month: lowest charge of the month that 10, 50 and 90 % of the years stay under.
     daily_harvest_wh : (n_years, n_days) harvest offered, NaN where a year has no such day.
     best_mount, sun : None behind a window. calendar : None without skippable work.
-    headings : empty where no heading matters.
+    headings : empty where no heading matters. window : sun, lux and distance from the glass; None in the open.
     """
 
     check: CheckResult
@@ -62,6 +63,7 @@ class SeasonResult:
     sun: SunField | None
     calendar: WorkCalendar | None
     levers: tuple[Lever, ...]
+    window: BehindWindow | None = None
 
     @property
     def met(self) -> bool:
@@ -104,6 +106,7 @@ class SeasonResult:
                 "headings": [cost.to_dict() for cost in self.headings],
                 "sun_hours": [] if self.sun is None else sun_hours(self.sun).reset_index().to_dict(orient="records"),
             }
+            | ({} if self.window is None else {"window": self.window.to_dict()})
         )
 
 
@@ -154,6 +157,7 @@ def season(
         sun=None if robot.window is not None else sun_field(robot),
         calendar=calendar,
         levers=moved,
+        window=None if robot.window is None else behind_window(robot, weather=weather, years=years, seed=seed),
     )
 
 
