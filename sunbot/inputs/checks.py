@@ -1,20 +1,17 @@
-"""What several keys of an input file must hold together."""
+"""What several keys of a robot file must hold together."""
 
 from __future__ import annotations
 
 import difflib
 import re
 from collections.abc import Iterator, Sequence
-from datetime import datetime
 from itertools import pairwise
 from typing import TYPE_CHECKING, Any
-from zoneinfo import ZoneInfo, ZoneInfoNotFoundError, available_timezones
 
 from .fields import Path, Problem
 
 if TYPE_CHECKING:
     from .robot import Battery, Controller, Deployment, Load, Panel, Rail, Robot
-    from .site import Climate, Site, WeatherSource
     from .window import Window
 
 Row = tuple[Any, ...]
@@ -29,92 +26,6 @@ STRING_MISMATCH = 0.10
 """How far the voltages of strings on one tracker may differ; common practice."""
 TOUCH_V = 1e-6
 """Voltages this close agree: sums of decimals round."""
-CLOCK_FROM_SUN_H = 5.0
-"""No inhabited place keeps a clock this far from the sun; common practice: western China is 3 h off."""
-
-
-def site(site: Site) -> Iterator[Problem]:
-    """Time zone, its fit to the longitude, and the order of the horizon."""
-    zone = _zone(site.time_zone)
-    if zone is None:
-        yield Problem(("time_zone",), f'"{site.time_zone}" is no time zone', _zone_remedy(site.time_zone))
-    elif not site.time_zone.startswith(("UTC", "Etc/", "GMT", "Antarctica/")):
-        offset = zone.utcoffset(datetime(2018, 1, 15))
-        clock_h = offset.total_seconds() / 3600 if offset is not None else 0.0
-        if abs((clock_h - site.longitude / 15 + 12) % 24 - 12) > CLOCK_FROM_SUN_H:
-            yield Problem(
-                ("longitude",),
-                f"{site.longitude:g} does not fit the clock of {site.time_zone}, which belongs near {15 * clock_h:g}",
-                "degrees east as positive and degrees west as negative, or the zone of the place",
-                judged=(("time_zone",),),
-            )
-    azimuths = [azimuth for azimuth, _ in site.horizon]
-    if any(b <= a for a, b in pairwise(azimuths)):
-        pairs = sorted(dict(site.horizon).items())
-        yield Problem(("horizon",), "its azimuths do not rise", f"horizon = {_rows(pairs)}")
-
-
-def _zone(name: str) -> ZoneInfo | None:
-    # names that follow the machine rather than the place
-    if name in {"localtime", "posixrules", "Factory"}:
-        return None
-    try:
-        return ZoneInfo(name)
-    except (ZoneInfoNotFoundError, ValueError, OSError):
-        return None
-
-
-def _zone_remedy(name: str) -> str:
-    known = sorted(available_timezones())
-    wanted = name.strip().lower().replace(" ", "_")
-    city = [zone for zone in known if wanted and wanted in {zone.lower(), zone.lower().rsplit("/", 1)[-1]}]
-    by_lower = {zone.lower(): zone for zone in known}
-    near = city or [by_lower[match] for match in difflib.get_close_matches(wanted, by_lower, n=2, cutoff=0.75)]
-    names = " or ".join(f'"{zone}"' for zone in near[:3]) or 'a name such as "Europe/Zurich" or "UTC"'
-    return f"the IANA name of the place's clock: {names}"
-
-
-def weather_source(weather: WeatherSource) -> Iterator[Problem]:
-    """Each source has the keys it needs."""
-    named = "source" in weather.model_fields_set
-    if weather.source == "file" and weather.file is None:
-        yield Problem(
-            ("file",), 'is missing; source "file" needs it', 'e.g. file = "tower-2019-2023.csv"', (("source",),)
-        )
-    if not named and weather.file is not None:
-        yield Problem(("source",), f'is missing although file is "{weather.file}"', 'source = "file"', (("file",),))
-    if weather.source == "nasa-power":
-        for name in ("first_year", "last_year"):
-            if getattr(weather, name) is None:
-                yield Problem(
-                    (name,), 'is missing; source "nasa-power" needs it', f"e.g. {name} = 2010", (("source",),)
-                )
-    first, last = weather.first_year, weather.last_year
-    if first is not None and last is not None and first > last:
-        wrong = f"{last} is before first_year = {first}"
-        yield Problem(("last_year",), wrong, f"first_year = {last} and last_year = {first}", (("first_year",),))
-    if weather.stamps_in is not None and not _is_clock(weather.stamps_in):
-        wrong = f'"{weather.stamps_in}" is no clock'
-        yield Problem(("stamps_in",), wrong, 'stamps_in = "UTC", an offset such as "+01:00", or an IANA zone name')
-
-
-def _is_clock(name: str) -> bool:
-    return re.fullmatch(r"[+-](0\d|1[0-4]):[0-5]\d", name) is not None or _zone(name) is not None
-
-
-def climate(climate: Climate) -> Iterator[Problem]:
-    """The minimum of a month is below its maximum, and some month has light."""
-    swapped = [m for m, (a, b) in enumerate(zip(climate.temp_min_c, climate.temp_max_c, strict=True)) if a > b]
-    if swapped:
-        months = "every month" if len(swapped) == 12 else ", ".join(MONTHS[month] for month in swapped)
-        yield Problem(
-            ("temp_min_c",),
-            f"is above temp_max_c in {months}",
-            "the mean daily minimum here and the maximum in temp_max_c; they seem swapped",
-            judged=(("temp_max_c",),),
-        )
-    if not any(climate.ghi_kwh_m2_day):
-        yield Problem(("ghi_kwh_m2_day",), "has no light in any month", "the mean daily kWh/m2 of each month")
 
 
 def window(window: Window) -> Iterator[Problem]:
@@ -131,11 +42,16 @@ def window(window: Window) -> Iterator[Problem]:
 
 def deployment(deployment: Deployment) -> Iterator[Problem]:
     """Both days exist in every year."""
-    for name, day in (("from", deployment.start), ("to", deployment.end)):
-        if day == "02-29":
-            yield Problem((name,), '"02-29" comes only in leap years', f'{name} = "02-28" or {name} = "03-01"')
-        elif month_and_day(day) == (0, 0):
-            yield Problem((name,), f'"{day}" is no day of the year', f'month and day as MM-DD, e.g. {name} = "03-15"')
+    yield from day_of_year("from", deployment.start)
+    yield from day_of_year("to", deployment.end)
+
+
+def day_of_year(name: str, day: str) -> Iterator[Problem]:
+    """The day exists in every year."""
+    if day == "02-29":
+        yield Problem((name,), '"02-29" comes only in leap years', f'{name} = "02-28" or {name} = "03-01"')
+    elif month_and_day(day) == (0, 0):
+        yield Problem((name,), f'"{day}" is no day of the year', f'month and day as MM-DD, e.g. {name} = "03-15"')
 
 
 def month_and_day(day: str) -> tuple[int, int]:
@@ -248,7 +164,7 @@ def _spans(spans: Sequence[Row], name: str, required: bool = False) -> Iterator[
     if outside or backward:
         if not outside:
             wrong = f"{_row(backward[0])} does not run forward within the day"
-            yield Problem((name,), wrong, f"{name} = {_rows(_within_days(spans))}")
+            yield Problem((name,), wrong, f"{name} = {in_words(_within_days(spans))}")
         return
     for first, second in pairwise(sorted(spans, key=lambda span: span[:2])):
         if second[0] < first[1]:
@@ -271,13 +187,15 @@ def _row(row: Row) -> str:
     return f"[{', '.join(shown)}]"
 
 
-def _rows(rows: Sequence[Row]) -> str:
+def in_words(rows: Sequence[Row]) -> str:
+    """Rows as the file writes them."""
     return f"[{', '.join(map(_row, rows))}]"
 
 
 def robot(robot: Robot) -> Iterator[Problem]:
     """Names are unique, loads have rails, rails fit the battery, panels fit the controller, hours do not overlap."""
     yield from _headings(robot)
+    yield from _on_a_route(robot)
     for kind, parts in (("panel", robot.panels), ("rail", robot.rails), ("load", robot.loads)):
         yield from _unique(kind, [part.name for part in parts])
     yield from _load_rails(robot)
@@ -299,6 +217,19 @@ def _headings(robot: Robot) -> Iterator[Problem]:
         if heading != "fixed" and angle is not None:
             wrong = f'{_row(row)} has an angle, which only "fixed" has'
             yield Problem(("headings", number), wrong, f"{without}, or {_row((*hours, 'fixed', angle))}")
+
+
+def _on_a_route(robot: Robot) -> Iterator[Problem]:
+    """What only a robot that keeps its place can have."""
+    if not robot.site.stops:
+        return
+    if robot.window is not None:
+        wrong = "is given, and the site file has a route"
+        yield Problem(("window",), wrong, "no [window], or a site without stops", (("site",),))
+    for number, load in enumerate(robot.loads):
+        if load.clock == "solar":
+            wrong = '"solar" is the time of one meridian, and the site file has a route'
+            yield Problem(("load", number, "clock"), wrong, 'clock = "local"', (("site",),))
 
 
 def _unique(kind: str, names: list[str]) -> Iterator[Problem]:

@@ -18,6 +18,7 @@ from . import fields, keys
 from .faults import Data, faults_of, independent, rank, unknown_key, value_at, where
 from .fields import Part
 from .robot import Robot
+from .side_files import with_side_files
 from .site import Site
 
 MAX_BYTES = 1_000_000
@@ -42,7 +43,8 @@ def load_site(path: str | Path) -> Site:
     site, faults = _checked(Site, _table_in(path), file=path.name)
     if site is None or faults:
         raise InputError(faults)
-    return site.model_copy(update={"folder": str(path.resolve().parent)})
+    folder = path.resolve().parent
+    return with_side_files(site, folder, file=path.name).model_copy(update={"folder": str(folder)})
 
 
 def load_robot(path: str | Path, *, site: str | Path | Site | None = None) -> Robot:

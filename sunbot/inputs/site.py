@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import Any, Literal
 
-from . import checks
+from . import site_checks
+from .checks import month_and_day
 from .fields import (
     FileName,
     Flag,
@@ -26,6 +27,8 @@ from .fields import (
 )
 from .window import Terrain
 
+MOST_STOPS = 400
+"""One a day for a year, and a few."""
 EXAMPLE_GHI = [1.1, 1.9, 3.1, 4.3, 5.2, 5.8, 5.9, 5.0, 3.7, 2.2, 1.2, 0.9]
 EXAMPLE_MIN = [-3, -2, 1, 4, 8, 12, 14, 13, 10, 6, 1, -2]
 EXAMPLE_MAX = [3, 5, 10, 14, 19, 22, 25, 24, 19, 14, 7, 4]
@@ -55,7 +58,7 @@ class WeatherSource(Part):
     last_year: Whole | None = key(None, "nasa-power: last year", ge=1980, le=2200, example=2023)
 
     def problems(self) -> Iterator[Problem]:
-        yield from checks.weather_source(self)
+        yield from site_checks.weather_source(self)
 
 
 class Climate(Part):
@@ -75,7 +78,33 @@ class Climate(Part):
     coarse: Flag = key(False, "true: read off a coarse table of the world, a first look; every answer says so")
 
     def problems(self) -> Iterator[Problem]:
-        yield from checks.climate(self)
+        yield from site_checks.climate(self)
+
+
+class Stop(Part):
+    """Where a robot on a route is from one day of the year on, until the next stop; the last one runs over New Year."""
+
+    name: Named | None = key(None, "what people call it", example="North basin")
+    start: Text = key(..., "first day there, MM-DD, of the site's clock", alias="from", example="03-15")
+    latitude: Number = key(..., "north positive", unit="deg", ge=-90, le=90, example=47.3)
+    longitude: Number = key(..., "east positive", unit="deg", ge=-180, le=180, example=8.1)
+    altitude_m: Number = key(0.0, "above the sea", unit="m", ge=-450, le=9000, example=540)
+    horizon: Horizon = key(
+        (), "[azimuth from north, elevation] pairs, azimuths ascending", unit="deg", example=[[0, 5], [90, 12]]
+    )
+    climate: Climate | None = key(
+        None,
+        "its own twelve monthly means; left out, those of the site within 200 km, else a coarse table of the world",
+        example={"ghi_kwh_m2_day": 3.2, "temp_min_c": 6, "temp_max_c": 14},
+    )
+
+    @property
+    def first(self) -> tuple[int, int]:
+        """Month and day of the first day."""
+        return month_and_day(self.start)
+
+    def problems(self) -> Iterator[Problem]:
+        yield from site_checks.stop(self)
 
 
 class Site(Part):
@@ -98,6 +127,9 @@ class Site(Part):
         unit="deg",
         example=[[0, 5], [90, 12], [180, 3], [270, 8]],
     )
+    horizon_file: FileName | None = key(
+        None, "instead of horizon: a CSV beside this file, with columns azimuth and elevation", example="horizon.csv"
+    )
     snow_days: TwelveDays | None = key(
         None,
         "mean days a month on which panels flatter than 40 deg lie under snow; one value or twelve",
@@ -106,10 +138,23 @@ class Site(Part):
     weather: WeatherSource = key(WeatherSource(), "where the weather comes from")
     climate: Climate | None = key(None, "twelve monthly means of the place")
     terrain: Terrain | None = key(None, "sloping ground, which tilts robot and panels together")
+    stops: tuple[Stop, ...] = key(
+        (),
+        "a route, for a boat or a survey that moves on with the year: the light follows the robot from stop to stop, "
+        "clock and ground stay those of the site",
+        alias="stop",
+        max_length=MOST_STOPS,
+        example=[{"from": "03-15", "latitude": 47.3, "longitude": 8.1}],
+    )
+    track: FileName | None = key(
+        None,
+        "instead of [[stop]]: a CSV beside this file, with columns date, latitude, longitude and, if known, altitude_m",
+        example="track.csv",
+    )
     folder: Text = key("", "set by the reader: the folder the site file stands in", exclude=True)
 
     def problems(self) -> Iterator[Problem]:
-        yield from checks.site(self)
+        yield from site_checks.site(self)
 
     def _said(self) -> tuple[Any, ...]:
         return tuple(getattr(self, name) for name in type(self).model_fields if name != "folder")

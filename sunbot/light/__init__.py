@@ -1,6 +1,7 @@
 """W/m2 that reach the cells: weather and a panel in, `Light` per heading out."""
 
 from .carriers import Light, LightYield, Sun, mean_plane_w_m2
+from .cautions import ground_cautions
 from .level import light_on_level
 from .lighting import lights_on, parked_otherwise
 from .room import room_air_c, weather_in_room
@@ -14,6 +15,7 @@ __all__ = [
     "Sun",
     "SunField",
     "WindowLight",
+    "ground_cautions",
     "light_on_level",
     "lights_on",
     "mean_plane_w_m2",

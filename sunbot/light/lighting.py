@@ -12,6 +12,7 @@ from ..inputs.robot import Panel, Robot
 from ..inputs.site import Site
 from ..sky.weather import Weather
 from ..types import FloatArray, IntArray
+from .along import horizons_along
 from .behind_glass import behind_glass
 from .carriers import Light, LightYield, Sun
 from .glass import dirt_pass, snow_pass
@@ -89,7 +90,16 @@ def outside_of(site: Site, weather: Weather, sun: Sun) -> Outside:
         sun=Sun(**{name: values[row] for name, values in vars(sun).items()}),
         albedo=np.asarray(site.albedo)[month - 1][row],
     )
-    return Outside(sky, under_horizon(sky, site, sun=sun, row=row), runs_of(row), month)
+    left = [(under_horizon(sky, here, sun=sun, row=row), share) for here, share in horizons_along(site, weather)]
+    return Outside(sky, _spliced(left, row), runs_of(row), month)
+
+
+def _spliced(parts: list[tuple[SkyParts, FloatArray]], row: IntArray) -> SkyParts:
+    """The sky whose ground is lit as the horizon of each stop lets it be."""
+    if len(parts) == 1:
+        return parts[0][0]
+    ground = np.sum([sky.ground * share[row] for sky, share in parts], axis=0)
+    return replace(parts[0][0], ground=ground)
 
 
 def _views(robot: Robot, weather: Weather, sun: Sun) -> list[View]:
@@ -104,7 +114,9 @@ def _views(robot: Robot, weather: Weather, sun: Sun) -> list[View]:
     nose_deg, any_nose = noses(robot, sun), np.zeros((1, 1))
 
     def outdoors(panel: Panel) -> View:
-        return open_air(panel, robot.site, sun=sun, nose_deg=nose_deg if heading_matters(panel) else any_nose)
+        nose = nose_deg if heading_matters(panel) else any_nose
+        sites, shares = zip(*horizons_along(robot.site, weather), strict=True)
+        return mixed([open_air(panel, here, sun=sun, nose_deg=nose) for here in sites], shares)
 
     return [_at_its_tilts(panel, weather, outdoors) for panel in robot.panels]
 

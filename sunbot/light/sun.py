@@ -8,7 +8,7 @@ from pvlib import atmosphere, irradiance, spa
 from scipy.interpolate import CubicSpline
 
 from ..sky.weather import Weather
-from ..types import FloatArray
+from ..types import FloatArray, Place
 from .carriers import Sun
 
 _DELTA_T_S = 67.0  # terrestrial less universal time; ten seconds more move the sun by 0.0001 deg
@@ -24,15 +24,27 @@ _TEMP_C = 12.0  # of the air, for refraction
 def sun_over(weather: Weather) -> Sun:
     """The sun over the reference rows of ``weather``, at the middles of the steps.
 
-    Where the sun rises or sets within a step, zenith and azimuth are those of its mean direction while it is up. Where
-    it stays down the zenith is above 90.
+    On a route each row is seen from the stop it belongs to. Where the sun rises or sets within a step, zenith and
+    azimuth are those of its mean direction while it is up. Where it stays down the zenith is above 90.
 
     Source
     ------
     Published: Reda & Andreas, NREL/TP-560-34302 (2008), by pvlib; air mass Kasten & Young, Applied Optics 28 (1989)
     4735; extraterrestrial irradiance Spencer, Search 2 (1971) 172, with 1366.1 W/m².
     """
-    times, place = weather.ref_times, weather.place
+    if weather.stay is None:
+        return _sun_at(weather.ref_times, weather.place, weather.step_h)
+    along: dict[str, FloatArray] = {}
+    for number, stay in enumerate(weather.stays):
+        rows = np.flatnonzero(weather.stay == number)
+        if rows.size:
+            for name, values in vars(_sun_at(weather.ref_times[rows], stay.place, weather.step_h)).items():
+                along.setdefault(name, np.empty(weather.stay.size))[rows] = values
+    return Sun(**along)
+
+
+def _sun_at(times: pd.DatetimeIndex, place: Place, step_h: float) -> Sun:
+    """The sun at one place, over steps of ``step_h`` around ``times``."""
     seconds = times.as_unit("s").asi8.astype(np.float64)
     path = _SunPath(seconds[0] - 86400.0, seconds[-1] + 86400.0)
     pressure_pa = float(atmosphere.alt2pres(place.altitude_m))
@@ -42,9 +54,9 @@ def sun_over(weather: Weather) -> Sun:
 
     zenith_deg, azimuth_deg = position(seconds)
     lit = (zenith_deg < 90.0).astype(np.float64)
-    reach_deg = _EARTH_RATE_DEG_H * np.cos(np.radians(place.latitude)) * weather.step_h / 2 + _EDGE_DEG
+    reach_deg = _EARTH_RATE_DEG_H * np.cos(np.radians(place.latitude)) * step_h / 2 + _EDGE_DEG
     edge = np.flatnonzero(np.abs(zenith_deg - 90.0) < reach_deg)
-    inside = ((np.arange(_SUB_STEPS) + 0.5) / _SUB_STEPS - 0.5) * weather.step_h * 3600.0
+    inside = ((np.arange(_SUB_STEPS) + 0.5) / _SUB_STEPS - 0.5) * step_h * 3600.0
     parts = position((seconds[edge, None] + inside).ravel())
     shape = (edge.size, _SUB_STEPS)
     share, up_zenith, up_azimuth = _mean_while_up(parts[0].reshape(shape), parts[1].reshape(shape))

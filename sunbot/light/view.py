@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field, replace
 from typing import NamedTuple
 
@@ -84,7 +84,7 @@ def light_through(sky: SkyParts, factors: Factors, runs: list[Run]) -> Iterator[
         yield run, block
 
 
-def mixed(views: list[View], shares: list[FloatArray]) -> View:
+def mixed(views: Sequence[View], shares: Sequence[FloatArray]) -> View:
     """The view of a panel that has each of ``views`` for its share of a reference step, (n_rows or 1,) each."""
     if len(views) == 1:
         return views[0]

@@ -193,8 +193,10 @@ def _tables(name: str, field: FieldInfo, part: type[Part], said: Any) -> Iterato
     """The table, or the list of tables, under one key of the top of a file."""
     yield f"# {field.description}"
     if keys.is_list_of_parts(field):
-        for position, one in enumerate(said):
+        for position, one in enumerate(said or ()):
             yield from ([""] if position else []) + _table(part, one, f"[[{name}]]", all_keys=position == 0)
+        if not said:
+            yield from _table(part, {}, f"# [[{name}]]")
         return
     optional = said is None and field.default is None
     yield from _table(part, said or {}, f"{'# ' if optional else ''}[{name}]")

@@ -19,6 +19,7 @@ from .power_service import power_reading
 from .quality import AuditCheck, audit_record
 from .readings import Reading
 from .record import runs, stamp
+from .route import route_weather
 from .sun_height import sun_height
 from .weather import Weather
 from .whole_years import whole_years
@@ -44,6 +45,10 @@ def weather_for(site: Site, *, years: int = 50, seed: int = 1) -> Weather:
     """
     if years < 1:
         raise ValueError(f"years must be at least 1, not {years}")
+    if site.horizon_file is not None or site.track is not None:
+        raise ValueError("horizon_file and track are read by load_site: give horizon and stops instead")
+    if site.stops:
+        return route_weather(site, years=years, seed=seed)
     source = site.weather.source
     if source == "climate":
         return generated_weather(site, years=years, seed=seed)

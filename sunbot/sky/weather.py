@@ -12,6 +12,14 @@ import pandas as pd
 from ..types import BoolArray, Caution, IntArray, Place
 
 
+@dataclass(frozen=True)
+class Stay:
+    """Where a robot on a route is for a part of the year, with the horizon there: (azimuth, elevation) [deg]."""
+
+    place: Place
+    horizon: tuple[tuple[float, float], ...]
+
+
 @dataclass(frozen=True, eq=False)
 class Weather:
     """Weather above the site; whole years that form a ring.
@@ -28,6 +36,8 @@ class Weather:
     digest : short hex digest of the table.
     snow_covered : (n_times,) or None; true where panels flatter than 40 deg lie under snow.
     cautions : what to know before trusting it.
+    stays : where the robot is through the year, on a route; else empty. ``place`` then is that of the site: its clock.
+    stay : (n_rows,) which of ``stays`` each reference row belongs to; None without a route.
     """
 
     table: pd.DataFrame
@@ -39,6 +49,8 @@ class Weather:
     digest: str
     snow_covered: BoolArray | None = None
     cautions: tuple[Caution, ...] = ()
+    stays: tuple[Stay, ...] = ()
+    stay: IntArray | None = None
 
     @cached_property
     def times(self) -> pd.DatetimeIndex:

@@ -9,7 +9,7 @@ import numpy as np
 from ..demand import rail_cautions
 from ..harvest import supply_cautions
 from ..inputs.robot import Robot
-from ..light import window_cautions
+from ..light import ground_cautions, window_cautions
 from ..storage import Balance, box_temp_c, resistance_ohm
 from ..types import Caution
 from .chain import Chain
@@ -36,6 +36,7 @@ def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
     """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery."""
     return (
         *chain.weather.cautions,
+        *ground_cautions(robot),
         *window_cautions(robot, chain.lights(robot)),
         *supply_cautions(robot, chain.weather_at(robot), lights=chain.lights(robot), supply=chain.supply(robot)),
         *_rails(chain, robot),

@@ -118,7 +118,12 @@ def _weather_and_audit(
 
 
 def _audit_as_used(weather: Weather) -> tuple[AuditCheck, ...]:
-    """The audit of the table itself: of generated years the first few, each under the sun it was made for."""
+    """The audit of the table itself: of generated years the first few, each under the sun it was made for.
+
+    On a route there is none: an audit asks whether clock and place fit, and there are many places.
+    """
+    if weather.stays:
+        return ()
     table, n_rows = weather.table, len(weather.ref_times)
     starts = range(0, min(len(table), _AUDITED_YEARS * n_rows), n_rows)
     parts = [table.iloc[first : first + n_rows].set_axis(weather.ref_times) for first in starts]
