@@ -105,7 +105,7 @@ def _year(day: str) -> int:
 
 
 def _numbers(row: _Row, columns: dict[str, tuple[float, float]], *, file: str, faults: list[Fault]) -> dict[str, float]:
-    """The row's numbers, each within its bounds; 0 in place of what is wrong, which is added to ``faults``."""
+    """The row's numbers, each within its bounds; NaN in place of what is wrong, which is added to ``faults``."""
     found = {}
     for title, (low, high) in columns.items():
         if title not in row.cells:
@@ -118,7 +118,7 @@ def _numbers(row: _Row, columns: dict[str, tuple[float, float]], *, file: str, f
         if not low <= number <= high:
             wrong = f'"{text}" is no number' if number != number else f"{number:g} is outside {low:g} to {high:g}"
             faults.append(Fault(f"{file}: line {row.line}: {title}", wrong, f"a number from {low:g} to {high:g}"))
-            number = 0.0
+            number = float("nan")
         found[title] = number
     return found
 

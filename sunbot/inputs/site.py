@@ -140,8 +140,7 @@ class Site(Part):
     terrain: Terrain | None = key(None, "sloping ground, which tilts robot and panels together")
     stops: tuple[Stop, ...] = key(
         (),
-        "a route, for a boat or a survey that moves on with the year: the light follows the robot from stop to stop, "
-        "clock and ground stay those of the site",
+        "a route through the year: sun, sky and horizon are those of the stop, clock and ground those of the site",
         alias="stop",
         max_length=MOST_STOPS,
         example=[{"from": "03-15", "latitude": 47.3, "longitude": 8.1}],

@@ -9,6 +9,8 @@ import pandas as pd
 
 from ..calendar import REFERENCE_YEAR, standard_offset_h
 from ..inputs.robot import Robot
+from ..inputs.site import Site, Stop
+from ..sky.legs import stop_on
 from ..types import BoolArray, FloatArray, IntArray
 from .carriers import Sun
 from .headings import noses
@@ -44,21 +46,33 @@ class SunField:
 
 
 def sun_field(robot: Robot) -> SunField:
-    """The sun over the robot's site through one year, in steps of 10 minutes, as the first panel meets it."""
+    """The sun over the robot's site (on a route, its stops) through one year of 10-minute steps, on the first panel."""
     site, per_day = robot.site, 24 * 60 // _STEP_MIN
     hour = (np.arange(per_day) + 0.5) * 24.0 / per_day
     days = pd.date_range(f"{REFERENCE_YEAR}-01-01", periods=365, freq="D", tz="UTC", unit="s")
     since_h = np.arange(365)[:, None] * 24.0 + hour - standard_offset_h(site.time_zone)
-    times = days[0] + pd.to_timedelta((since_h.ravel() * 3600.0).astype(np.int64), unit="s")
-    zenith_deg, azimuth_deg = sun_position(pd.DatetimeIndex(times), site.latitude, longitude=site.longitude)
+    times = pd.DatetimeIndex(days[0] + pd.to_timedelta((since_h.ravel() * 3600.0).astype(np.int64), unit="s"))
+    zenith_deg, azimuth_deg, horizon_deg = (np.zeros(times.size) for _ in range(3))
+    for here, at in _places(site, days):
+        rows = np.repeat(at, per_day)
+        zenith_deg[rows], azimuth_deg[rows] = sun_position(times[rows], here.latitude, longitude=here.longitude)
+        horizon_deg[rows] = horizon_at(here.horizon, azimuth_deg[rows])
     up = zenith_deg < 90.0
-    hidden = up & (90.0 - zenith_deg < horizon_at(site.horizon, azimuth_deg))
+    hidden = up & (90.0 - zenith_deg < horizon_deg)
     taken = np.zeros(up.size)
     lit = up & ~hidden
     taken[lit] = _taken(robot, zenith_deg[lit], azimuth_deg[lit])
     shape = (365, per_day)
     month = np.asarray(days.month, dtype=np.int64)
     return SunField(hour, month, up.reshape(shape), hidden.reshape(shape), taken.reshape(shape))
+
+
+def _places(site: Site, days: pd.DatetimeIndex) -> list[tuple[Site | Stop, BoolArray]]:
+    """The site, or each stop of its route, with the days spent there."""
+    if not site.stops:
+        return [(site, np.ones(len(days), dtype=bool))]
+    number = stop_on(site.stops, days.month.to_numpy(dtype=np.int64), days.day.to_numpy(dtype=np.int64))
+    return [(stop, number == n) for n, stop in enumerate(site.stops) if (number == n).any()]
 
 
 def _taken(robot: Robot, zenith_deg: FloatArray, azimuth_deg: FloatArray) -> FloatArray:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from ..inputs.site import Stop
-from ..types import Caution
+from ..types import Caution, IntArray
 
 MOST_LEGS = 24
 """Each stay costs the weather of all years once: a quarter of a second for 50 years."""
@@ -31,6 +31,12 @@ def legs_of(stops: tuple[Stop, ...]) -> tuple[tuple[Stop, ...], tuple[Caution, .
         "its first; the robot counts as standing at the middle point of each."
     )
     return legs, (Caution("track-in-legs", "route", text),)
+
+
+def stop_on(stops: tuple[Stop, ...], month: IntArray, day_of_month: IntArray) -> IntArray:
+    """Which stop the robot is at on each day; before the first date of the year it is still at the last one."""
+    starts = [31 * first_month + first_day for first_month, first_day in (stop.first for stop in stops)]
+    return np.asarray((np.searchsorted(starts, 31 * month + day_of_month, side="right") - 1) % len(stops))
 
 
 def _joined(stops: tuple[Stop, ...], reach_km: float) -> tuple[Stop, ...]:

@@ -10,11 +10,11 @@ from ..calendar import standard_clock
 from ..errors import Fault, InputError
 from ..inputs.site import Site, Stop
 from ..inputs.site_checks import ROUTE_SOURCES
-from ..types import BoolArray, Caution, IntArray, Place
+from ..types import BoolArray, Caution, Place
 from .clear_sky import clear_sky_weather
 from .climate import generated_weather
 from .digest import table_digest
-from .legs import legs_of
+from .legs import legs_of, stop_on
 from .stop_climate import climate_at, name_of
 from .weather import Stay, Weather
 
@@ -35,7 +35,8 @@ def route_weather(site: Site, *, years: int, seed: int, skip: int = 0) -> Weathe
         raise InputError(Fault("weather source", wrong, '"climate" or "clear-sky", or a site file without a route'))
     stops, cautions = legs_of(site.stops)
     whole = _weather_at(site, stops[0], years=years, seed=seed, skip=skip)
-    stay = _stay_of(whole, stops)
+    clock = standard_clock(whole.ref_times, site.time_zone)
+    stay = stop_on(stops, clock.month, clock.day_of_month)
     found = [*cautions, *whole.cautions]
     for number, stop in enumerate(stops[1:], start=1):
         here = _weather_at(site, stop, years=years, seed=seed, skip=skip)
@@ -67,16 +68,10 @@ def _weather_at(site: Site, stop: Stop, *, years: int, seed: int, skip: int) -> 
             weather = generated_weather(here, years=years, seed=seed, skip=skip)
     except InputError as error:
         raise InputError(
-            Fault(f"{name}: {fault.where}", fault.wrong, fault.instead) for fault in error.faults
+            Fault(f"site.toml: {name}: {fault.where.removeprefix('site.toml: ')}", fault.wrong, fault.instead)
+            for fault in error.faults
         ) from None
     return replace(weather, cautions=(*cautions, *weather.cautions))
-
-
-def _stay_of(weather: Weather, stops: tuple[Stop, ...]) -> IntArray:
-    """Which stop the robot is at in each reference row; before the year's first date it is still at the last one."""
-    clock = standard_clock(weather.ref_times, weather.place.time_zone)
-    starts = [31 * month + day for month, day in (stop.first for stop in stops)]
-    return np.asarray((np.searchsorted(starts, 31 * clock.month + clock.day_of_month, side="right") - 1) % len(stops))
 
 
 def _with_days_of(here: Weather, whole: Weather, *, rows: BoolArray) -> Weather:

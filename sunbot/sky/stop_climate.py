@@ -40,7 +40,7 @@ def climate_at(site: Site, stop: Stop) -> tuple[Climate | None, tuple[Caution, .
     except InputError as error:
         if site.climate is None:
             remedy = "[stop.climate] with twelve monthly means of the place"
-            raise InputError(Fault(f"{name}: climate", error.faults[0].wrong, remedy)) from None
+            raise InputError(Fault(f"site.toml: {name}: climate", error.faults[0].wrong, remedy)) from None
         text = (
             "There is no climate for it: clearness and temperatures of the site, over 200 km away, are taken at its "
             "latitude. Write [stop.climate]."
