@@ -86,10 +86,19 @@ def trace_rows(rows: Rows, flows: Sums) -> Sums:
         "spilled_w": flows["spilled"] * ah * per_h,
         "demand_w": demand,
         "served_w": served,
-        "soc": block.pack.soc.at(rows.u[1:] * block.pack.places_per_wh_ah),
+        "soc": block.pack.soc.at(_before_boots(rows) * block.pack.places_per_wh_ah),
         "box_temp_c": np.where(rows.out > 0, rows.per_year(window.box_y), rows.per_year(window.warm_box_y)),
         "on": 1.0 - rows.out,
     }
+
+
+def _before_boots(rows: Rows) -> FloatArray:
+    """Stored energy at the end of each step [Wh/Ah], before the next one begins with a boot."""
+    u = rows.u[1:].copy()
+    for s, lanes in rows.record.boots:
+        if s > 0:
+            u[s - 1, lanes] += rows.block.pack.boot_wh / rows.block.ah_l[lanes]
+    return u
 
 
 def _mixed(rows: Rows, name: str) -> FloatArray:

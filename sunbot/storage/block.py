@@ -21,6 +21,7 @@ class Record:
     power : harvest less everything served, at the terminals [W/Ah]. amps : into the pack [A/Ah]
     served : by level [Wh/Ah]. out : share of the step in which the loads are cut
     cuts : per event what the plain sums over the rows would get wrong, (step, lanes, values by name)
+    boots : steps at whose start some lanes paid for one
     """
 
     u: list[FloatArray]
@@ -30,6 +31,7 @@ class Record:
     out: list[FloatArray]
     rows: bool
     cuts: list[tuple[int, IntArray, dict[str, FloatArray]]] = field(default_factory=list)
+    boots: list[tuple[int, IntArray]] = field(default_factory=list)
 
     @classmethod
     def of(cls, n: int, shape: tuple[int, ...], *, n_levels: int, rows: bool) -> Record:
@@ -108,6 +110,7 @@ class Block:
         self.k, self.node = np.empty(shape, dtype=np.intp), np.empty(shape, dtype=np.intp)
         self.place, self.v, self.a, self.b, self.c, self.draw, self.ess = (np.empty(shape) for _ in range(7))
         self.supply_at, self.demand_at = np.empty(shape), np.empty(shape)
+        self.kept, self.loss_x, self.drawn = np.empty(shape), np.empty(shape), np.empty(shape)
         self.mask, self.mask2 = np.empty(shape, dtype=bool), np.empty(shape, dtype=bool)
         self.year, self.design = layout.year_of, layout.design_of
         self.watts = designs.watts_at[self.design]
@@ -129,22 +132,20 @@ class Block:
         self.work_rows = [window.work_of(k) for k in levels] if window.work.total.slope is None else None
         self.work_starts = [window.work.total.start(self.year, k).reshape(shape) for k in levels]
         self.work_x = self.work[window.month - 1]
-        self.may_fail = self._may_fail(window)
+        self.may_fail, self.may_choke = self._may_fail(window), self._may_choke(window)
 
     def _may_fail(self, window: Window) -> bool:
         """Whether some lane could ask for more than the pack can give."""
-        most = window_top(window.essential.total.base, window.essential.total.slope) * self.essential.max()
+        most = window.essential.total.top * self.essential.max()
         most += self.fixed.max() + self.heater.max() + self.coast_draw.max()
         if self.work_x.size:
-            most += window_top(window.work.total.base, window.work.total.slope) * self.work_x.max() * len(self.work_x)
+            most += window.work.total.top * self.work_x.max() * len(self.work_x)
         half_low = 0.5 * float(self.pack.curve.rest_v[0])
+        # A tenth aside for voltages read a rounding beyond their nodes.
         return bool(most * 0.25 * window.cold_pack.r4.max() > 0.9 * half_low**2)
 
-
-def window_top(base: FloatArray, slope: FloatArray | None) -> float:
-    """A bound on the values of a table over voltage."""
-    if base.size == 0:
-        return 0.0
-    if slope is None:
-        return float(base.max())
-    return float(np.abs(base).max() + np.abs(slope).max() * 1000.0)
+    def _may_choke(self, window: Window) -> bool:
+        """Whether a step is so short that all the energy of some lane could not leave its pack within it."""
+        real_h = window.hours_y[window.hours_y > 0]
+        low_v = float(self.pack.curve.rest_v[0])
+        return bool(real_h.size and real_h.min() * 2.0 * low_v**2 / window.cold_pack.r4.max() < self.full)

@@ -72,24 +72,26 @@ class OverVolts:
     """A quantity over (step, year, column, voltage), read at each lane's own voltage.
 
     base, slope : (n_steps, n_years * n_columns * n_volts); value = base[j] + slope[j] * place. With one node base is
-    the value itself and slope is None.
+    the value itself and slope is None. top : the largest value at a node.
     """
 
     base: FloatArray
     slope: FloatArray | None
     n_columns: int
     n_volts: int
+    top: float
 
     @classmethod
     def through(cls, values: FloatArray) -> OverVolts:
         """The table through values (n_steps, n_years, n_columns, n_volts)."""
         steps, _, columns, volts = values.shape
+        top = float(values.max()) if values.size else 0.0
         if volts == 1:
-            return cls(np.ascontiguousarray(values).reshape(steps, -1), None, columns, 1)
+            return cls(np.ascontiguousarray(values).reshape(steps, -1), None, columns, 1, top)
         slope = np.diff(values, axis=-1)
         slope = np.concatenate((slope, slope[..., -1:]), axis=-1)
         base = values - slope * np.arange(volts)
-        return cls(base.reshape(steps, -1), slope.reshape(steps, -1), columns, volts)
+        return cls(base.reshape(steps, -1), slope.reshape(steps, -1), columns, volts, top)
 
     def start(self, year: IntArray, column: IntArray | int) -> IntArray:
         """Where the nodes of a year and column begin in a step's row."""
@@ -103,7 +105,7 @@ class OverVolts:
         if self.slope is None:
             value: FloatArray = self.base[step][..., start]
             return value
-        node = start + np.clip(place.astype(np.intp), 0, self.n_volts - 1)
+        node = start + np.minimum(place.astype(np.intp), self.n_volts - 1)
         base, slope = self.base[step], self.slope[step]
         if base.ndim == 1:
             return np.asarray(base[node] + slope[node] * place)

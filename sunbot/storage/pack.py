@@ -16,7 +16,7 @@ from .chemistry import CELL_KINDS, CellKind
 
 Age = Literal["worn", "new"]
 TABLE_NODES = 513
-"""Nodes of the look-up in stored energy; the voltage read from it is within 1 mV per cell of the curve."""
+"""Nodes of the look-up in stored energy; the voltage read from it is within 3 mV per cell of the curve."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -71,8 +71,8 @@ class Table:
         return cls(values - slope * np.arange(values.size), slope)
 
     def at(self, place: FloatArray) -> FloatArray:
-        """Values at fractional node numbers; any shape."""
-        k = np.clip(place.astype(np.intp), 0, self.base.size - 1)
+        """Values at fractional node numbers, at least 0; any shape."""
+        k = np.minimum(place.astype(np.intp), self.base.size - 1)
         value: FloatArray = self.base[k] + self.slope[k] * place
         return value
 

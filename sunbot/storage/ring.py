@@ -5,7 +5,7 @@ from __future__ import annotations
 import itertools
 from collections.abc import Iterator
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import partial
 from typing import Literal
 
@@ -75,10 +75,15 @@ def balance(
     Raises
     ------
     ValueError
-        A trace of several designs; voltages that miss the pack's.
+        A trace of several designs; voltages that miss the pack's; NaN or infinity in harvest, demand or temperature.
     """
     if keep == "trace" and designs.watts_at.size != 1:
         raise ValueError("a trace holds one design")
+    series = {"offer_w": supply.offer_w, "essential": demand.essential.total_w, "work": demand.work.total_w}
+    for name, values in (series | {"air_temp_c": air_temp_c}).items():
+        if not np.isfinite(values).all():
+            raise ValueError(f"{name} holds NaN or infinity")
+    supply, designs = only_used(supply, designs)
     box_c = box_temp_c(air_temp_c, step_h=float(lanes.step_h.max()), lag_h=pack.box_lag_h, rise_c=pack.box_rise_c)
     elapsed_h = np.cumsum(lanes.step_h, axis=0) - lanes.step_h
     source = Source(supply, demand, pack, lanes, box_c, np.asarray(row), elapsed_h)
@@ -92,6 +97,16 @@ def month_pieces(month: IntArray) -> list[slice]:
     edges = np.flatnonzero(np.diff(month)) + 1
     bounds = [0, *edges.tolist(), month.size]
     return [slice(a, b) for a, b in itertools.pairwise(bounds)]
+
+
+def only_used(supply: Supply, designs: Designs) -> tuple[Supply, Designs]:
+    """The wattages some design uses, so that the rest is not gathered step by step."""
+    used, watts_at = np.unique(designs.watts_at, return_inverse=True)
+    if used.size == supply.watts.size:
+        return supply, designs
+    panel_w, wire_w = (None if w is None else w[:, used] for w in (supply.panel_w, supply.wire_w))
+    few = replace(supply, watts=supply.watts[used], offer_w=supply.offer_w[:, used], panel_w=panel_w, wire_w=wire_w)
+    return few, replace(designs, watts_at=watts_at)
 
 
 def subset(designs: Designs, at: IntArray) -> Designs:
@@ -187,7 +202,8 @@ class Ring:
     def _crews(self, years: IntArray, designs: IntArray, *, rows: bool) -> list[Crew]:
         """Blocks over the given lanes, alike designs together."""
         order = designs[np.argsort(self.designs.watts_at[designs], kind="stable")]
-        n_blocks = max(1, -(-years.size * order.size // LANES_PER_BLOCK))
+        n_blocks = -(-years.size * order.size // LANES_PER_BLOCK)
+        n_blocks = max(1, n_blocks + (n_blocks % 2 if n_blocks > 1 else 0))  # an even share for each thread
         crews = []
         for part in np.array_split(order, min(n_blocks, order.size)):
             layout = Layout(years.size, part.size, years_last=-(-order.size // n_blocks) < years.size)

@@ -21,12 +21,12 @@ def step(block: Block, window: Window, s: int, *, record: Record, tallies: Talli
     """
     u, power, amps = record.u[s], record.power[s], record.amps[s]
     if block.n_off:
-        _restart(block, window, s, u=u, tallies=tallies)
+        _restart(block, window, s, record=record, tallies=tallies)
     coefs = _coefs(block, window, s)
     _look_up(block, u)
     _net_power(block, window, s, power=power)
     if window.due[s]:
-        _serve(block, window, s, record=record, tallies=tallies)
+        _serve(block, window, s, coefs=coefs, record=record, tallies=tallies)
     failed = _current(block, coefs, power=power, amps=amps)
     if window.bright[s]:
         _accept(block, window, coefs, u=u, amps=amps)
@@ -36,9 +36,9 @@ def step(block: Block, window: Window, s: int, *, record: Record, tallies: Talli
     _end(block, window, s, coefs=coefs, failed=failed, record=record, tallies=tallies)
 
 
-def _restart(block: Block, window: Window, s: int, *, u: FloatArray, tallies: Tallies) -> None:
+def _restart(block: Block, window: Window, s: int, *, record: Record, tallies: Tallies) -> None:
     """Loads come back where the charge allows, and pay for the boot."""
-    cold, mask, mask2 = window.cold[s], block.mask, block.mask2
+    u, cold, mask, mask2 = record.u[s], window.cold[s], block.mask, block.mask2
     np.greater_equal(u, cold.restart, out=mask)
     np.logical_and(mask, block.off, out=mask)
     if not np.count_nonzero(mask):
@@ -56,6 +56,8 @@ def _restart(block: Block, window: Window, s: int, *, u: FloatArray, tallies: Ta
         block.off_x[mask] = 0.0
         block.n_off -= lanes.size
         tallies.boots.reshape(-1)[lanes] += 1
+        if record.rows:
+            record.boots.append((s, lanes))
         if tallies.outages is not None:
             tallies.outages.end(lanes, at_h=window.elapsed_y[s][block.year[lanes]])
 
@@ -153,17 +155,23 @@ def _ask(block: Block, window: Window, s: int, *, level: int, tallies: Tallies, 
     np.multiply(out, block.work_x[level], out=out)
 
 
-def _serve(block: Block, window: Window, s: int, *, record: Record, tallies: Tallies) -> None:
-    """Skippable work takes the energy above its threshold, lowest threshold first; lowers the net power by it."""
+def _serve(block: Block, window: Window, s: int, *, coefs: Coefs, record: Record, tallies: Tallies) -> None:
+    """Skippable work takes what lies above its threshold, lowest threshold first; lowers the net power by it.
+
+    What a pack can give above a threshold is the energy there less I²R of drawing it within the step.
+    """
     power, room, gone = record.power[s], block.b, block.c
-    coefs = window.cold[s] if not window.heated or window.heated[s] is None else window.warm[s]
     np.multiply(power, window.hours[s], out=room)
-    np.add(room, record.u[s], out=room)
+    np.multiply(record.u[s], coefs.keep, out=block.kept)
+    np.multiply(block.v, block.v, out=block.loss_x)
+    np.divide(coefs.r, block.loss_x, out=block.loss_x)
+    np.multiply(block.loss_x, np.multiply(window.per_h[s], 0.25), out=block.loss_x)
     gone[...] = 0.0
     for level in window.due[s]:
         served = record.served[level][s]
         _ask(block, window, s, level=level, tallies=tallies, out=served)
-        np.subtract(room, coefs.skip[level], out=block.a)
+        _above(block, coefs.skip[level], out=block.a)
+        np.add(block.a, room, out=block.a)
         np.maximum(block.a, 0.0, out=block.a)
         np.minimum(served, block.a, out=served)
         if block.n_off:
@@ -174,6 +182,20 @@ def _serve(block: Block, window: Window, s: int, *, record: Record, tallies: Tal
             tallies.served_wh_ah[level] += served
     np.multiply(gone, window.per_h[s], out=gone)
     np.subtract(power, gone, out=power)
+
+
+def _above(block: Block, skip: FloatArray, *, out: FloatArray) -> None:
+    """Energy at the terminals that takes the charge down to a threshold; negative below it [Wh/Ah]."""
+    drawn = block.drawn
+    np.subtract(block.kept, skip, out=out)
+    np.maximum(out, 0.0, out=drawn)
+    if block.may_choke:
+        # Past half of what the resistance lets through, more current brings less power.
+        limit = np.divide(0.5, block.loss_x, out=np.zeros_like(drawn), where=block.loss_x > 0)
+        np.minimum(drawn, limit, out=drawn)
+    np.multiply(drawn, drawn, out=drawn)
+    np.multiply(drawn, block.loss_x, out=drawn)
+    np.subtract(out, drawn, out=out)
 
 
 def _current(block: Block, coefs: Coefs, *, power: FloatArray, amps: FloatArray) -> BoolArray | None:

@@ -77,7 +77,10 @@ def compiled_year(u, rows, offer, ess, work, ah, own, off_draw, boot, c, tables)
         if on:
             power = offer[t] / ah - (ess[t] + own) / ah
             if work[t] > 0:
-                served = min(work[t] / ah, max(0.0, u + power - skip[t]))
+                spare = u * keep[t] - skip[t]
+                if spare > 0:
+                    spare -= r[t] / (v * v) * spare * spare
+                served = min(work[t] / ah, max(0.0, power + spare))
                 power -= served
             else:
                 served = 0.0

@@ -301,17 +301,23 @@ class Walk:
         volts = pack.read(pack.rests, self.wh)
         panel, wire, offer = self.harvest(volts)
         net = offer - sum(essential) - case.own_use_w - heater
-        room = self.wh + net * hours
+        room = net * hours
+        kept = self.wh * (1 - pack.fade(temp) * hours)
+        ohm = pack.ohm(temp)
         done = []
         for k, parts in enumerate(work):
             threshold = pack.threshold_wh(case.skip_soc[k], temp)
             asked = sum(parts) * hours
-            served = max(0.0, min(asked, room - threshold))
+            # Above the threshold: all that is stored there less I2R of drawing it, as far as current brings power.
+            spare = kept - threshold
+            if spare > 0:
+                drawn = min(spare, volts * volts * hours / (2 * ohm))
+                spare -= ohm / (volts * volts * hours) * drawn * drawn
+            served = max(0.0, min(asked, room + spare))
             room -= served
             done.append(served)
         power = net - sum(done) / hours
 
-        ohm = pack.ohm(temp)
         inside = volts * volts + 4 * ohm * power
         share, dropped = 1.0, inside < 0
         if dropped:

@@ -1,7 +1,12 @@
 """The lanes against the plain loop, and the laws of the balance."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
+
+from sunbot.inputs.robot import Battery
+from sunbot.storage import ring
 
 MONTHLY = {
     "unserved_wh": "unserved",
@@ -86,3 +91,95 @@ def test_a_trace_adds_up_to_the_months(worlds):
     assert ((trace.demand_w - trace.served_w) * hours).sum() == pytest.approx(missed.sum(), rel=1e-9, abs=1e-9)
     assert trace.soc.min() == pytest.approx(result.lowest_soc.min(), abs=0.2)
     assert ((trace.soc >= 0) & (trace.soc <= 1 + 1e-9)).all()
+
+
+def test_halving_the_step_changes_the_unserved_energy_of_a_year_by_under_one_per_cent(worlds):
+    """The same light and loads in steps of 1 h and of 30 min."""
+    rng = np.random.default_rng(9)
+    hour, day = np.arange(8760) % 24, np.arange(8760) // 24
+    sun = np.maximum(0, np.sin(np.pi * (hour - 6) / 12)) * (1 - 0.85 * np.cos(2 * np.pi * day / 365))
+    offer = 12.0 * sun * np.repeat(rng.uniform(0.05, 1.0, 365), 24)
+    load = np.where((hour > 7) & (hour < 18), 3.0, 1.0)
+    battery = Battery(chemistry="li-ion", cells_in_series=3, capacity_ah=5.0)
+    unserved = []
+    for parts in (1, 2):
+        series = {"offer_w": np.repeat(offer, parts), "load_w": np.repeat(load, parts)}
+        world = worlds.plain_world(battery, temp_c=12.0, step_h=1 / parts, ring=True, **series)
+        unserved.append(world.run("verdict").unserved_wh.sum())
+    assert unserved[0] > 100
+    assert unserved[1] == pytest.approx(unserved[0], rel=0.01)
+
+
+def test_more_light_and_more_capacity_never_harm_where_nothing_is_skippable(worlds):
+    """Unserved energy falls with light and with Ah."""
+    for seed in (31, 32, 33):
+        calm = {"n_levels": 0, "explicit": False, "boot_wh": 0.0, "chemistry": "lifepo4", "heater_w": 0.0}
+        world = worlds.random_world(seed, n_years=2, days=4, n_designs=15, ease=0.4, ring=False, **calm)
+        x = world.designs
+        even = replace(x, watts_at=0 * x.watts_at, essential_x=0 * x.extra_w + 1, extra_w=0 * x.extra_w)
+        for vary in ("light_x", "battery_ah"):
+            fixed = replace(even, light_x=np.full(15, 1.0), battery_ah=np.full(15, 6.0))
+            steps = replace(fixed, **{vary: np.linspace(0.5, 2.0, 15) * getattr(fixed, vary)})
+            lost = replace(world, designs=steps).run("verdict").unserved_wh.sum(axis=(0, 1))
+            assert (np.diff(lost) <= 1e-9 * lost.max()).all(), (seed, vary)
+            assert lost[0] > lost[-1]
+
+
+def test_a_robot_that_ends_its_year_dead_is_visited(worlds):
+    """No light at all: every year starts anew from start_soc, and every start is a visit."""
+    world = worlds.random_world(5, ring=True, n_designs=2)
+    dark = replace(world.supply, offer_w=0 * world.supply.offer_w, panel_w=0 * world.supply.panel_w)
+    dark = replace(dark, wire_w=0 * world.supply.wire_w)
+    result = replace(world, supply=dark).run()
+    assert (result.visits == 1).all()
+    assert result.settled.all()
+    assert (result.outages >= 1).all()
+
+
+def test_deployments_start_at_their_start_charge_and_are_not_gone_round(worlds):
+    """With before = -1 a lane knows nothing of the year before it."""
+    world = worlds.random_world(21, ring=False, n_years=3, n_designs=2, start_soc=0.9, ease=0.1)
+    result = world.run()
+    assert result.settled.all()
+    assert (result.visits == 0).all()
+    ring = replace(world, lanes=replace(world.lanes, before=np.array([2, 0, 1])))
+    assert not np.array_equal(ring.run().lowest_soc, result.lowest_soc)
+
+
+def test_a_ring_that_never_settles_says_so_and_keeps_its_books(worlds):
+    """A pack that loses a little of its charge every year, never full and never cut, is not periodic."""
+    battery = worlds.ideal("li-ion", capacity_ah=10.0)
+    load = np.full(720, 1e-3)
+    result = worlds.plain_world(battery, offer_w=0.0, load_w=load, ring=True).run()
+    assert not result.settled.any()
+    assert -result.ledger.stored[0, 0] == pytest.approx(load.sum(), rel=1e-6)
+    periodic = worlds.plain_world(
+        battery, offer_w=np.tile(np.r_[np.zeros(12), np.ones(12)], 30), load_w=load, ring=True
+    )
+    assert periodic.run().settled.all()
+
+
+def test_many_lanes_in_blocks_on_threads_equal_few(worlds, monkeypatch):
+    """However the lanes are cut into blocks and windows, the outcome is the same."""
+    world = worlds.random_world(14, n_designs=23)
+    whole = world.run("months")
+    monkeypatch.setattr(ring, "LANES_PER_BLOCK", 10)
+    monkeypatch.setattr(ring, "ROWS_PER_WINDOW", 200)
+    parts = world.run("months")
+    for name in ("unserved_wh", "skipped_wh", "hours_out", "lowest_soc", "outages", "longest_out_h", "first_out"):
+        assert getattr(parts, name) == pytest.approx(getattr(whole, name), rel=1e-12, abs=1e-12)
+    assert parts.ledger.stored == pytest.approx(whole.ledger.stored, rel=1e-12, abs=1e-12)
+
+
+def test_what_the_balance_refuses(worlds):
+    """A trace of several designs, voltages that miss the pack's, and numbers that are none are a caller's mistakes."""
+    world = worlds.random_world(2, supply_volts=True)
+    with pytest.raises(ValueError, match="one design"):
+        world.run("trace")
+    short = replace(world.supply, battery_v=world.supply.battery_v * 0.9)
+    with pytest.raises(ValueError, match="battery_v must reach"):
+        replace(world, supply=short).run()
+    holed = world.supply.offer_w.copy()
+    holed[5] = np.nan
+    with pytest.raises(ValueError, match="offer_w holds NaN"):
+        replace(world, supply=replace(world.supply, offer_w=holed)).run()

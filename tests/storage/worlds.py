@@ -92,7 +92,7 @@ def random_world(seed, *, n_years=2, days=2, n_designs=3, **force):
             {
                 "cutoff_soc": 0.15,
                 "restart_soc": 0.3,
-                "resistance_mohm": float(rng.uniform(20, 800)),
+                "resistance_mohm": float(rng.uniform(20, 800) * rng.choice([1, 1, 5])),
                 "max_charge_c": float(rng.uniform(0.1, 0.8)),
                 "charge_efficiency": float(rng.uniform(0.8, 1.0)),
                 "self_discharge_pct_month": float(rng.uniform(0, 30)),
@@ -191,3 +191,41 @@ def scalar_case(scalar_loop, world, d):
         essential_x=float(x.essential_x[d]),
         extra_w=float(x.extra_w[d]),
     )
+
+
+def plain_world(battery, *, offer_w, load_w, temp_c=25.0, step_h=1.0, work_w=None, skip=0.5, ring=False, age="new"):
+    """One lane through given harvest and load [W], by step or constant; no own use, one voltage, January throughout."""
+    n = max(np.size(offer_w), np.size(load_w), np.size(temp_c))
+    offer, load, air = (np.broadcast_to(np.asarray(x, dtype=float), n) for x in (offer_w, load_w, temp_c))
+    zero = np.zeros((n, 1))
+    work = np.zeros((n, 0, 1)) if work_w is None else np.broadcast_to(np.asarray(work_w, float), n)[:, None, None]
+    offer3 = offer[:, None, None]
+    demand = Demand(
+        np.zeros(1),
+        Asked(load[:, None], load[:, None], zero, zero, zero),
+        Asked(work, work, 0 * work, 0 * work, 0 * work),
+        np.full(work.shape[1], skip),
+        ("work",) * work.shape[1],
+    )
+    steps = np.arange(n)[:, None]
+    month = np.ones(n, dtype=np.int64)
+    lanes = Lanes(steps, np.full((n, 1), step_h), month, np.array([0 if ring else -1]), 1)
+    one = np.ones(1)
+    designs = Designs(
+        np.zeros(1, dtype=np.int64), one * battery.capacity_ah, one, one, np.ones((12, work.shape[1], 1)), np.zeros(1)
+    )
+    supply = Supply(np.zeros(1), one, offer3, offer3, 0 * offer3, 0.0)
+    return World(battery, age, supply, demand, lanes, designs, air, np.arange(n))
+
+
+def ideal(chemistry, **keys):
+    """A battery that loses nothing and takes any current, but for what ``keys`` say."""
+    lossless = {
+        "resistance_mohm": 1e-9,
+        "charge_efficiency": 1.0,
+        "self_discharge_pct_month": 0.0,
+        "max_charge_c": 100.0,
+        "cutoff_soc": 0.05,
+        "capacity_ah": 10.0,
+    }
+    return Battery(chemistry=chemistry, cells_in_series=CELLS[chemistry], **(lossless | keys))
