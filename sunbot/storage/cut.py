@@ -37,19 +37,17 @@ def cut(
 ) -> None:
     """Serve the share of the step above cut-off, cut the loads, coast through the rest."""
     stay = record.power[s].ravel()[lanes] < 0.0
-    gives_up = None if failed is None else failed.ravel()[lanes]
-    if gives_up is not None:
-        stay |= gives_up
-        gives_up = gives_up[stay]
+    if failed is not None:
+        stay |= failed.ravel()[lanes]
     lanes = lanes[stay]
     if not lanes.size:
         return
     year, u_next = block.year[lanes], record.u[s + 1].reshape(-1)
     u, hours = record.u[s].ravel()[lanes], window.hours_y[s][year]
     cutoff = (window.warm_pack or window.cold_pack).cutoff[s][year]
-    share = np.maximum(u - cutoff, 0.0) / np.maximum(u - u_next[lanes], TINY)
-    share = np.minimum(share, 1.0)
-    if gives_up is not None:
+    share = np.minimum(np.maximum(u - cutoff, 0.0) / np.maximum(u - u_next[lanes], TINY), 1.0)
+    if failed is not None:
+        gives_up = failed.ravel()[lanes]
         share[gives_up] = 0.0
         tallies.failed.reshape(-1)[lanes[gives_up]] = True
     middle = np.where(share > 0.0, np.minimum(u, cutoff), u)
