@@ -101,7 +101,7 @@ def _by_month(chain: Chain, robot: Robot) -> tuple[FloatArray, FloatArray, Float
     asked, lanes = chain.demand(robot), chain.lanes(robot)
     load_w = (asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1))[chain.weather.row]
     offer_w = chain.supply(robot).offer_w[:, 0, :].mean(axis=-1)
-    air_c = chain.weather.table["temp_air"].to_numpy()
+    air_c = chain.weather_at(robot).table["temp_air"].to_numpy()
     at = lanes.month[:, None] + np.zeros_like(lanes.row)
     hours = np.bincount(at.ravel(), weights=lanes.step_h.ravel(), minlength=13)
     out = [
