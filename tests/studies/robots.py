@@ -62,7 +62,7 @@ def robot(*, watts=20.0, battery_ah=12.0, load_w=1.5, work_w=None, survival=0.8,
 def quick_weather(site, *, years, seed=1, every=6):
     """Generated years in steps of a few hours: what a study asks of them is the same, at a third of the cost."""
     fine = weather_for(site.model_copy(update={"weather": site.weather}), years=years, seed=seed)
-    half = pd.Timedelta(hours=(every - 1) / 2)
+    half = pd.Timedelta(hours=(every - 1) / 2).as_unit("s")
     values = fine.table.to_numpy().reshape(-1, every, fine.table.shape[1]).mean(axis=1)
     table = pd.DataFrame(values, index=(fine.times[::every] + half).as_unit("s"), columns=fine.table.columns)
     return replace(fine, table=table, step_h=float(every), row=fine.row[::every] // every, snow_covered=None)
