@@ -28,6 +28,9 @@ TURNS = 5
 ANY_SITE = Site(name="any", latitude=0.0, longitude=0.0, time_zone="UTC")
 """Stands in for a site file that cannot be read, so that the robot file is still looked through."""
 
+SITE_KEYS, ROBOT_KEYS = frozenset({"latitude", "longitude"}), frozenset({"battery", "load"})
+"""Keys by which a file of one kind is known where the other was expected."""
+
 AnyPart = TypeVar("AnyPart", bound=Part)
 
 
@@ -40,7 +43,9 @@ def load_site(path: str | Path) -> Site:
         With every mistake of the file.
     """
     path = Path(path)
-    site, faults = _checked(Site, _table_in(path), file=path.name)
+    data = _table_in(path)
+    _refuse_other_kind(data, path, ROBOT_KEYS, is_a="robot file", not_a="site file")
+    site, faults = _checked(Site, data, file=path.name)
     if site is None or faults:
         raise InputError(faults)
     folder = path.resolve().parent
@@ -64,6 +69,7 @@ def load_robot(path: str | Path, *, site: str | Path | Site | None = None) -> Ro
     """
     path = Path(path)
     data = _table_in(path)
+    _refuse_other_kind(data, path, SITE_KEYS, is_a="site file", not_a="robot file")
     found, site_faults = _site_for(data, path, site)
     robot, faults = _checked(Robot, {**data, "site": found or ANY_SITE}, file=path.name)
     if robot is None or faults or site_faults:
@@ -89,6 +95,12 @@ def _site_for(data: Data, path: Path, site: str | Path | Site | None) -> tuple[S
         return load_site(site), []
     except InputError as error:
         return None, list(error.faults)
+
+
+def _refuse_other_kind(data: Data, path: Path, telling: frozenset[str], *, is_a: str, not_a: str) -> None:
+    """One plain word where a site file is given for a robot file, or the other way round."""
+    if telling <= data.keys():
+        raise InputError(Fault(str(path), f"is a {is_a}, and a {not_a} is needed here", f"the path of the {not_a}"))
 
 
 def _exists(path: Path) -> bool:
@@ -129,6 +141,8 @@ def _text_in(path: Path) -> str:
             wrong = f"is {status.st_size / 1e6:,.0f} MB large, and such a file has a few kB"
             raise InputError(Fault(str(path), wrong, "the path of the right file; weather goes into [weather] file"))
         return path.read_bytes().decode("utf-8-sig")
+    except InputError:  # a ValueError too, and already in words
+        raise
     except (FileNotFoundError, NotADirectoryError):
         raise InputError(Fault(str(path), "is not there", _near_files(path))) from None
     except UnicodeDecodeError as error:

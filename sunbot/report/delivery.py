@@ -38,9 +38,8 @@ class Outputs:
             if path is not None and not path.parent.is_dir()
         ]
         if self.plot is not None and self.plot.suffix.lower() not in PLOT_FORMATS:
-            faults.append(
-                Fault(f"--plot {self.plot}", "no plot can be written in this format", f"a name in {PLOT_FORMATS}")
-            )
+            wrong = "no plot can be written in this format"
+            faults.append(Fault(f"--plot {self.plot}", wrong, "a name ending in .png, .svg or .pdf"))
         if faults:
             raise InputError(faults)
 

@@ -33,6 +33,9 @@ def files_of(start: Start, *, notes: Callable[[str], None]) -> dict[str, str]:
     """
     if start.from_weather is not None:
         return _from_weather(start, start.from_weather, notes=notes)
+    if (start.latitude is None) != (start.longitude is None):
+        there, missing = ("--lon", "--lat") if start.latitude is None else ("--lat", "--lon")
+        raise InputError(Fault(f"sunbot new: {missing}", f"is missing beside {there}", "both, in degrees"))
     if start.latitude is None or start.longitude is None:
         raise InputError(
             Fault(

@@ -4,8 +4,11 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable
+from datetime import timedelta
+from textwrap import fill
 from typing import TYPE_CHECKING
 
+from ..calendar import standard_offset_h
 from ..types import Caution
 
 if TYPE_CHECKING:
@@ -74,7 +77,7 @@ def check_head(result: CheckResult) -> str:
             + _mark(bool(verdict.work_met[0]))
         )
     if result.visits_per_year > 0:
-        lines.append(f"  someone has to go there and restart it {result.visits_per_year:.2g} times a year")
+        lines.append(f"  someone has to go there and restart it {_times(result.visits_per_year)} a year")
     return "\n".join(lines)
 
 
@@ -95,6 +98,13 @@ def _nearness(result: CheckResult) -> str:
         )
     lines = [f"  - {way.change}" for way in result.ways_out]
     return "\n".join(["Ways out, each enough alone, the smallest change first", *lines])
+
+
+def _times(count: float) -> str:
+    """A mean count of events, in words people use."""
+    if abs(count - 1.0) < 0.05:
+        return "once"
+    return f"{count:.2g} times" if count < 10 else f"{count:.0f} times"
 
 
 def _one_year(survived: int) -> str:
@@ -128,13 +138,19 @@ def months_text(months: pd.DataFrame) -> str:
             f"{_number(row['harvest_over_demand'], '.2f'):>9}{row['lowest_soc']:>8.0%}"
             f"{row['hours_out_per_year']:>8.1f}{_number(row['work_done'], '.0%'):>7}"
         )
+    dark = [name for name, harvest in zip(MONTH_NAMES, months["harvest_wh_day"], strict=True) if harvest == 0]
     deficit = [
         name
         for name, ratio in zip(MONTH_NAMES, months["harvest_over_demand"], strict=True)
         if ratio < 1  # NaN compares false
     ]
-    tail = f"  Harvest falls short of demand in {', '.join(deficit)}." if deficit else ""
-    return "Month by month (means over all years; lowest charge of all years)\n" + "\n".join([*rows, tail]).rstrip()
+    tails = [f"  The panel gives nothing at all in {_months(dark)}."] if dark else []
+    tails += [f"  Harvest falls short of demand in {_months(deficit)}."] if deficit else []
+    return "Month by month (means over all years; lowest charge of all years)\n" + "\n".join([*rows, *tails])
+
+
+def _months(names: list[str]) -> str:
+    return "every month" if len(names) == len(MONTH_NAMES) else ", ".join(names)
 
 
 def _number(value: float, form: str) -> str:
@@ -159,6 +175,8 @@ def _autonomy(result: CheckResult) -> str:
 def _hours(hours: float | None) -> str:
     if hours is None:
         return "without end"
+    if hours < 1:
+        return f"{60 * hours:.0f} min"
     if hours < 72:
         return f"{hours:.0f} h"
     return f"{hours:.0f} h ({hours / 24:.1f} days)"
@@ -168,19 +186,24 @@ def _outages(result: CheckResult) -> str:
     outages = result.outages
     if outages.first is None:
         return "Outages of essential loads: none."
-    zone = result.robot.site.time_zone
-    first = outages.first.tz_convert(zone).strftime("%Y-%m-%d %H:%M")
+    ahead_h = standard_offset_h(result.weather.place.time_zone)
+    first = (outages.first + timedelta(hours=ahead_h)).strftime("%Y-%m-%d %H:%M")
     back = (
         "it does not always come back by itself"
         if result.visits_per_year > 0
         else f"it is back by itself after {_hours(outages.until_restart_h)} on average"
     )
     return (
-        f"Outages of essential loads: {outages.count_per_year:.2g} a year, {outages.hours_per_year:.3g} h a year, "
+        f"Outages of essential loads: {_times(outages.count_per_year)} and {_few(outages.hours_per_year)} h a year, "
         f"the longest {_hours(outages.longest_h)}\n"
-        f"  the first begins {first} local time; {back}\n"
+        f"  the first begins about {first} standard time; {back}\n"
         f"  {result.unserved_share:.2%} of the essential energy is not served"
     )
+
+
+def _few(value: float) -> str:
+    """Three digits, and never a power of ten."""
+    return f"{value:.3g}" if value < 1000 else f"{value:.0f}"
 
 
 def _flows(result: CheckResult) -> str:
@@ -192,20 +215,22 @@ def _flows(result: CheckResult) -> str:
         if wh >= 0.005:
             share = energy.out[key] / energy.panel if energy.panel > 0 else math.nan
             lines.append(f"  {wh:>8.2f} Wh  {_number(share, '.1%'):>6}  {name}")
+    if abs(energy.stored * per_day) >= 0.005:
+        whence = "more in the battery at the end" if energy.stored > 0 else "out of the battery's first charge"
+        lines.append(f"  {energy.stored * per_day:>8.2f} Wh  {'':>6}  {whence}")
     served = energy.out["loads"] + energy.out["idle"] + energy.out["rails"] + energy.out["rail_wire"]
     if served > 0:
         lines.append(f"  Of what the rails draw, {energy.out['idle'] / served:.0%} is idling.")
     steps = ", ".join(f"{step.step} {-step.wh_per_year * per_day:+.1f}" for step in result.light_steps)
-    lines.append(f"  Before the panel, in Wh a day against level ground in the open: {steps}")
+    before = f"Before the panel, in Wh a day against level ground in the open: {steps}"
+    lines.append(fill(before, WIDTH, initial_indent="  ", subsequent_indent="    ", break_on_hyphens=False))
     return "\n".join(lines)
 
 
 def cautions_text(cautions: Iterable[Caution]) -> str:
     """The cautions, wrapped, one paragraph each; empty where there are none."""
-    import textwrap
-
     lines = [
-        textwrap.fill(
+        fill(
             f"{caution.where}: {caution.text} [{caution.code}]", WIDTH, initial_indent="  - ", subsequent_indent="    "
         )
         for caution in cautions

@@ -59,10 +59,10 @@ def _years(site: Site) -> tuple[int, int]:
     first, last = site.weather.first_year or 0, site.weather.last_year or 0
     newest = datetime.now().year - 1
     if not FIRST_YEAR <= first <= last <= newest:
-        wrong = f"{first} to {last} is not within {FIRST_YEAR} to {newest}"
-        raise InputError(
-            Fault(f"{_WHERE}: first_year, last_year", wrong, "whole past years, the first not after the last")
-        )
+        missing = site.weather.first_year is None or site.weather.last_year is None
+        wrong = "are missing" if missing else f"{first} to {last} is not within {FIRST_YEAR} to {newest}"
+        remedy = f"whole past years, e.g. first_year = {newest - 9} and last_year = {newest}"
+        raise InputError(Fault(f"{_WHERE}: first_year, last_year", wrong, remedy))
     return first, last
 
 

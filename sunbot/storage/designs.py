@@ -77,4 +77,4 @@ def autonomy_h(pack: Pack, *, battery_ah: float, draw_w: float, temp_c: float = 
         row=np.zeros(1, dtype=np.int64),
         keep="verdict",
     )
-    return float(lanes.step_h.sum() - result.hours_out.sum())
+    return max(0.0, float(lanes.step_h.sum() - result.hours_out.sum()))

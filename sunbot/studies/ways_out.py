@@ -25,6 +25,8 @@ PANEL_STEPS = np.array([1.0, 1.04, 1.12])
 """Panels held against their own supply, above the one that as much more light would ask for."""
 LOADS_X = np.geomspace(1 / 30, 1.5, 48)
 """Extra loads tried, as multiples of the mean load asked: to 9 %."""
+LEAST_W, MOST_ROUNDS = 1e-3, 6
+"""A robot that asks for next to nothing is tried from here on, each round 45 times as far as the one before."""
 FEW_YEARS = 5
 TILTS_DEG = np.arange(0.0, 91.0, 15.0)
 TILT_YEARS = 3
@@ -132,11 +134,15 @@ def _extra_load_w(chain: Chain, robot: Robot) -> float | None:
     """Largest extra load tried up to which every smaller one fits; None where not even the robot as filed does."""
     asked = chain.demand(robot)
     mean_w = float(asked.essential.total_w.mean() + asked.work.total_w.sum(axis=1).mean())
-    extra_w = mean_w * np.concatenate(([0.0], LOADS_X))
+    extra_w = max(mean_w, LEAST_W) * np.concatenate(([0.0], LOADS_X))
     many = repeated(as_filed(robot, n_levels=len(asked.level_loads)), extra_w.size)
-    balance = chain.run(robot, replace(many, extra_w=extra_w), keep="verdict")
-    fits = int(np.cumprod(verdict_on(balance, robot.target).target_met).sum())
-    return float(extra_w[fits - 1]) if fits else None
+    for _ in range(MOST_ROUNDS):
+        balance = chain.run(robot, replace(many, extra_w=extra_w), keep="verdict")
+        fits = int(np.cumprod(verdict_on(balance, robot.target).target_met).sum())
+        if fits < extra_w.size:
+            return float(extra_w[fits - 1]) if fits else None
+        extra_w = extra_w[-1] * np.concatenate(([1.0], LOADS_X / LOADS_X[0]))
+    return float(extra_w[0])
 
 
 def _ways_out(levers: _Levers) -> tuple[WayOut, ...]:
