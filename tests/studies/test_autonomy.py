@@ -1,0 +1,80 @@
+"""How long a full battery lasts."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from sunbot.storage import usable_wh
+from sunbot.studies.autonomy import autonomy_of, darkest_week_w
+from sunbot.studies.chain import Chain
+
+
+@pytest.fixture(scope="module")
+def chain(robots):
+    return Chain(robots.quick_weather(robots.hill(), years=2))
+
+
+def test_the_darkest_week_is_found_by_a_plain_sum():
+    """Of hourly harvest over two years, also the week that runs over their seam counts."""
+    watts = np.random.default_rng(1).uniform(5.0, 10.0, size=(1000, 2))
+    watts[-100:, 1], watts[:100, 0] = 1.0, 1.0  # the dark spell lies where the ring closes
+    whole = np.concatenate([watts[:, 0], watts[:, 1]])
+    ring = np.concatenate([whole, whole])
+    expected = min(ring[at : at + 168].mean() for at in range(whole.size))
+    hours = np.ones_like(watts)
+    assert darkest_week_w(watts, hours, ring=True) == pytest.approx(expected)
+    alone = min(watts[at : at + 168, year].mean() for year in range(2) for at in range(1000 - 168 + 1))
+    assert darkest_week_w(watts, hours, ring=False) == pytest.approx(alone)
+    assert alone > expected
+
+
+def test_padding_is_no_dark_step():
+    """Steps of no length do not count as hours without light."""
+    watts, hours = np.full((400, 1), 3.0), np.ones((400, 1))
+    watts[200:230], hours[200:230] = 0.0, 0.0
+    assert darkest_week_w(watts, hours, ring=True) == pytest.approx(3.0)
+
+
+def test_hours_in_the_dark_are_usable_energy_over_the_draw(chain, robots):
+    """At a small draw, where losses are small: usable watt-hours over watts, worn and new, at most a hair less."""
+    robot = robots.robot(load_w=0.2, battery_ah=20.0)
+    found = autonomy_of(chain, robot)
+    asked = chain.demand(robot).essential.total_w.mean() + chain.supply(robot).own_use_w
+    for age, hours in (("new", found.dark_new_h), ("worn", found.dark_worn_h)):
+        warm_h = usable_wh(chain.pack(robot, age=age), 20.0, temp_c=25.0) / asked
+        # at 1 degC the cells hold less, and self-discharge takes its part over some 300 hours
+        assert 0.7 * warm_h < hours < 1.02 * warm_h
+    assert found.dark_worn_h < found.dark_new_h
+
+
+def test_light_lengthens_it_and_enough_light_carries_without_end(chain, robots):
+    """The darkest week gives at least as many hours as the dark; a panel that carries the load has no end: null."""
+    thin, fat = autonomy_of(chain, robots.robot(watts=5.0)), autonomy_of(chain, robots.robot(watts=400.0))
+    assert thin.darkest_week_worn_h > thin.dark_worn_h
+    assert fat.darkest_week_worn_h is None
+    assert fat.to_dict()["darkest_week"] == {"new": None, "worn": None}
+
+
+def test_the_hungriest_month_counts_and_of_equal_ones_the_coldest(chain, robots):
+    """A lamp in May makes May the month; a steady load leaves it to the cold."""
+    computer, lamp = robots.robot().loads[0], robots.robot().loads[0].model_copy(update={"name": "l", "months": (5,)})
+    assert autonomy_of(chain, robots.robot().model_copy(update={"loads": (computer, lamp)})).worst_month == 5
+    assert autonomy_of(chain, robots.robot()).worst_month in (1, 2, 12)
+
+
+def test_a_load_the_pack_cannot_give_lasts_no_time_and_never_less(chain, robots):
+    """No negative hours."""
+    found = autonomy_of(chain, robots.robot(load_w=500.0, battery_ah=1.0))
+    assert found.dark_worn_h == pytest.approx(0.0, abs=0.05)
+    assert min(found.dark_worn_h, found.dark_new_h) >= 0.0
+
+
+def test_no_light_at_all_is_the_dark(robots):
+    """Where no light comes in, both answers are the same."""
+    weather = robots.quick_weather(robots.hill(), years=1)
+    dark = Chain(replace(weather, table=weather.table.assign(ghi=0.0, dni=0.0, dhi=0.0)))
+    found = autonomy_of(dark, robots.robot())
+    assert found.darkest_week_worn_h == pytest.approx(found.dark_worn_h)

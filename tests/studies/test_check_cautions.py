@@ -1,0 +1,112 @@
+"""Which cautions an answer carries, and which it must not."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import pytest
+
+from sunbot.studies.cautions import check_cautions, standing_cautions
+from sunbot.studies.chain import Chain
+from sunbot.studies.verdict import verdict_on
+
+GENEROUS = {"watts": 200.0, "battery_ah": 60.0, "load_w": 0.3}
+
+
+@pytest.fixture(scope="module")
+def chain(robots):
+    return Chain(robots.quick_weather(robots.hill(), years=3))
+
+
+def codes(chain, robot):
+    balance = chain.run(robot)
+    cautions = check_cautions(chain, robot, balance, verdict_on(balance, robot.target), survival_coarse=0.4)
+    return {caution.code: caution.text for caution in cautions}
+
+
+def battery_of(robots, **changes):
+    """The generous robot's battery, changed."""
+    robot = robots.robot(**GENEROUS)
+    return robot.model_copy(update={"battery": robot.battery.model_copy(update=changes)})
+
+
+def test_few_years_says_how_many_would_settle_it(chain, robots):
+    """Three years without a failure leave the target of 0.95 open; 73 would settle it."""
+    told = codes(chain, robots.robot(**GENEROUS, survival=0.95))
+    assert "--years 73" in told["few-years"]
+
+
+def test_a_target_that_is_missed_needs_no_word_on_few_years(chain, robots):
+    """Who fails is not told to look longer."""
+    assert "few-years" not in codes(chain, robots.robot(watts=3.0, load_w=3.0, survival=0.95))
+
+
+def test_frost_is_told_where_it_costs_harvest_and_not_of_a_warm_or_heated_box(chain, robots):
+    """Cells that must not be charged below freezing: the share of the harvest, unless the box stays above."""
+    assert "0 degC" in codes(chain, battery_of(robots))["frost"]
+    assert "frost" not in codes(chain, battery_of(robots, box_rise_c=15.0))
+    assert "frost" not in codes(chain, battery_of(robots, heater_w=20.0))
+
+
+def test_heat_is_told_where_the_box_is_too_hot_to_be_charged(chain, robots):
+    """The other end of the window."""
+    assert "heat" in codes(chain, battery_of(robots, box_rise_c=35.0))
+
+
+def test_a_pack_too_weak_is_told(chain, robots):
+    """More than the pack can give through its resistance."""
+    told = codes(chain, robots.robot(watts=60.0, battery_ah=2.0, load_w=200.0))
+    assert "larger pack" in told["pack-too-weak"]
+    assert "pack-too-weak" not in codes(chain, robots.robot(**GENEROUS))
+
+
+def test_a_controller_that_eats_more_than_it_gives_is_told(chain, robots):
+    """Its own use, day and night, above what it hands over."""
+    controller = {"kind": "mppt", "own_use_w": 5.0}
+    assert "draws" in codes(chain, robots.robot(watts=5.0, controller=controller))["controller-hungry"]
+
+
+@pytest.mark.parametrize(
+    ("chemistry", "cells", "word"),
+    [("lifepo4", 4, "protection circuit"), ("li-ion", 3, "fire"), ("lead-acid", 6, "hydrogen"), ("nimh", 10, "fuse")],
+)
+def test_every_chemistry_has_its_safety_word_and_local_codes_go_first(chain, robots, chemistry, cells, word):
+    """The dangers of the cells stand in every answer."""
+    battery = {"chemistry": chemistry, "cells_in_series": cells, "capacity_ah": 20.0}
+    told = codes(chain, robots.robot(battery=battery))["safety"]
+    assert word in told
+    assert "Local codes and licensed practice go first" in told
+
+
+def test_thresholds_by_charge_on_a_flat_voltage_are_told(chain, robots):
+    """A voltmeter cannot tell the charge of lithium iron phosphate."""
+    flat = {"chemistry": "lifepo4", "cells_in_series": 4, "capacity_ah": 20.0}
+    assert "flat-voltage" in codes(chain, robots.robot(battery=flat, work_w=5.0))
+    assert "flat-voltage" not in codes(chain, robots.robot(battery=flat))
+    assert "flat-voltage" not in codes(chain, robots.robot(work_w=5.0))
+
+
+def test_a_coarse_climate_tells_survival_in_dimmer_light(chain, robots):
+    """Read off the table of the world: the share alive with 15 % less light stands in the caution."""
+    robot = robots.robot()
+    climate = robot.site.climate.model_copy(update={"coarse": True})
+    coarse = robot.model_copy(update={"site": robot.site.model_copy(update={"climate": climate})})
+    assert "40%" in codes(chain, coarse)["coarse-climate"]
+    assert "coarse-climate" not in codes(chain, robot)
+
+
+def test_a_ring_that_does_not_settle_is_told(chain, robots):
+    """The robot lives on the edge."""
+    robot = robots.robot()
+    balance = chain.run(robot)
+    unsettled = replace(balance, settled=~balance.settled)
+    cautions = check_cautions(chain, robot, unsettled, verdict_on(balance, robot.target), survival_coarse=0.0)
+    assert "not-periodic" in {caution.code for caution in cautions}
+
+
+def test_cautions_of_the_weather_are_passed_on(robots, chain):
+    """What the reader of the weather noted reaches the answer."""
+    from sunbot.types import Caution
+
+    noted = replace(chain.weather, cautions=(Caution("one-year", "a file", "One year hides the bad ones."),))
+    assert "one-year" in {caution.code for caution in standing_cautions(Chain(noted), robots.robot())}
