@@ -129,6 +129,14 @@ def output_options(command: F) -> F:
     return command
 
 
+def robot_options(command: F) -> F:
+    """What every question about a robot can be asked with: its file, another site, the weather, the outputs."""
+    site = "Use this site instead of the robot file's."
+    command = weather_options(output_options(command))
+    command = click.option("--site", type=ROBOT_OR_SITE_FILE, metavar="FILE", help=site)(command)
+    return click.argument("robot", type=ROBOT_OR_SITE_FILE)(command)
+
+
 @click.group(cls=Commands, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
 @click.version_option(__version__, prog_name="sunbot")
 def cli() -> None:
@@ -139,10 +147,7 @@ def cli() -> None:
 
 
 @cli.command()
-@click.argument("robot", type=ROBOT_OR_SITE_FILE)
-@click.option("--site", type=ROBOT_OR_SITE_FILE, metavar="FILE", help="Use this site instead of the robot file's.")
-@weather_options
-@output_options
+@robot_options
 @click.pass_context
 def check(
     ctx: click.Context,
@@ -167,13 +172,10 @@ def check(
 
 
 @cli.command()
-@click.argument("robot", type=ROBOT_OR_SITE_FILE)
 @click.option("--watts", type=Sizes(), metavar="LOW:HIGH:STEP", help="Panels to try, e.g. 10:120:10 or 20,40,60.")
 @click.option("--battery-ah", type=Range(), metavar="LOW:HIGH", help="Batteries to try, e.g. 5:60.")
 @click.option("--controllers", is_flag=True, help="Compare direct, PWM and MPPT.")
-@click.option("--site", type=ROBOT_OR_SITE_FILE, metavar="FILE", help="Use this site instead of the robot file's.")
-@weather_options
-@output_options
+@robot_options
 @click.pass_context
 def pick(
     ctx: click.Context,
@@ -205,10 +207,7 @@ def pick(
 
 
 @cli.command()
-@click.argument("robot", type=ROBOT_OR_SITE_FILE)
-@click.option("--site", type=ROBOT_OR_SITE_FILE, metavar="FILE", help="Use this site instead of the robot file's.")
-@weather_options
-@output_options
+@robot_options
 @click.pass_context
 def season(
     ctx: click.Context,

@@ -11,7 +11,7 @@ import pytest
 import sunbot
 
 PACKAGE = Path(sunbot.__file__).parent
-GROUND = {"", "errors", "types", "units", "calendar", "wires", "writing", "__version__"}
+GROUND = {"", "errors", "types", "calendar", "wires", "writing", "__version__"}
 MAY_IMPORT = {
     "inputs": set(),
     "sky": {"inputs"},
@@ -54,7 +54,7 @@ def test_a_room_imports_only_the_rooms_before_it(room):
 
 
 def test_the_ground_floor_imports_nothing_above_it():
-    """errors, types, units, calendar and wires import only each other."""
+    """errors, types, calendar, wires and writing import only each other."""
     for path in PACKAGE.glob("*.py"):
         if path.name in ("__init__.py", "cli.py", "__main__.py"):
             continue

@@ -46,8 +46,7 @@ def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
     load_w, cold_c = (month_sums(values, lanes)[months] / hours_out[months] for values in (essential_w, air_c))
     hungry = load_w >= load_w.max() * (1.0 - 1e-6)
     at = int(np.flatnonzero(hungry)[np.argmin(cold_c[hungry])])
-    offer_w = supply.offer_w[:, 0, :].mean(axis=-1)
-    week_w = darkest_week_w(offer_w[lanes.row], lanes.step_h, ring=robot.deployment is None)
+    week_w = darkest_week_w(chain.offer_w(robot)[lanes.row], lanes.step_h, ring=robot.deployment is None)
     temp_c = float(cold_c[at]) + robot.battery.box_rise_c
 
     def hours(age: Age, harvest_w: float) -> float | None:

@@ -11,6 +11,7 @@ from ..inputs.robot import Robot
 from ..storage import Pack, usable_share
 from ..types import FloatArray
 from .chain import Chain
+from .months import month_hours, month_sums
 
 if TYPE_CHECKING:
     from .pick_result import Recommended
@@ -98,17 +99,10 @@ def size_by_autonomy(chain: Chain, robot: Robot, *, taken: Recommended | None) -
 
 def _by_month(chain: Chain, robot: Robot) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Load and harvest [Wh/day] and air [°C], means of each month the robot is out; (n_months,) each."""
-    asked, lanes = chain.demand(robot), chain.lanes(robot)
-    load_w = (asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1))[chain.weather.row]
-    offer_w = chain.supply(robot).offer_w[:, 0, :].mean(axis=-1)
-    air_c = chain.weather_at(robot).table["temp_air"].to_numpy()
-    at = lanes.month[:, None] + np.zeros_like(lanes.row)
-    hours = np.bincount(at.ravel(), weights=lanes.step_h.ravel(), minlength=13)
-    out = [
-        np.bincount(at.ravel(), weights=(values[lanes.row] * lanes.step_h).ravel(), minlength=13)[hours > 0]
-        / hours[hours > 0]
-        for values in (24.0 * load_w, 24.0 * offer_w, air_c)
-    ]
+    lanes, air_c = chain.lanes(robot), chain.weather_at(robot).table["temp_air"].to_numpy()
+    hours = month_hours(lanes)
+    series = (24.0 * chain.asked_w(robot), 24.0 * chain.offer_w(robot), air_c)
+    out = [month_sums(values, lanes)[hours > 0] / hours[hours > 0] for values in series]
     return out[0], out[1], out[2]
 
 

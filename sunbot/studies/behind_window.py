@@ -20,6 +20,7 @@ from ..storage import as_filed
 from ..types import Caution, FloatArray
 from .chain import Chain
 from .inputs_used import InputsUsed, inputs_used
+from .months import month_hours, month_sums
 from .plain import plain_document
 from .verdict import verdict_on
 
@@ -148,7 +149,7 @@ def distance_table(chain: Chain, robot: Robot, *, distances_m: Sequence[float]) 
     for distance_m in distances_m:
         moved = robot.model_copy(update={"window": _moved(robot, distance_m)})
         verdict = verdict_on(chain.run(moved, lanes=lanes, keep="verdict"), robot.target)
-        offer_wh = _wh_by_month(chain.supply(moved).offer_w[:, 0, :].mean(axis=-1), lanes)
+        offer_wh = _wh_by_month(chain.offer_w(moved), lanes)
         worst = int(np.nanargmin(offer_wh))
         found.append(
             {
@@ -166,9 +167,8 @@ def distance_table(chain: Chain, robot: Robot, *, distances_m: Sequence[float]) 
 
 def _wh_by_month(power_w: FloatArray, lanes: Lanes) -> FloatArray:
     """Energy a day by month, NaN in months that no lane reaches; (12,)."""
-    months = [lanes.month == month for month in range(1, 13)]
-    hours = np.array([lanes.step_h[month].sum() for month in months])
-    energy = np.array([(power_w[lanes.row[month]] * lanes.step_h[month]).sum() for month in months])
+    hours = month_hours(lanes)
+    energy = month_sums(power_w, lanes)
     return np.asarray(np.divide(24.0 * energy, hours, out=np.full(12, np.nan), where=hours > 0.0))
 
 

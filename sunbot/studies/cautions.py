@@ -118,7 +118,7 @@ def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
     box_c = box_temp_c(
         weather.table["temp_air"].to_numpy(), step_h=weather.step_h, lag_h=pack.box_lag_h, rise_c=pack.box_rise_c
     )
-    offer_w = chain.supply(robot).offer_w[:, 0, :].mean(axis=-1)
+    offer_w = chain.offer_w(robot)
     offered = float(offer_w.sum())
     for code, blocked, limit_c, word in (
         ("frost", box_c < pack.charge_min_c, pack.charge_min_c, "below"),

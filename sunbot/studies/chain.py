@@ -127,6 +127,16 @@ class Chain:
             key, lambda: demand(robot, self.weather.ref_times, battery_v=volts, reference=self.reference)
         )
 
+    def asked_w(self, robot: Robot) -> FloatArray:
+        """All that the loads ask for at the battery in each step, mean over its voltages [W]; (n_times,)."""
+        asked = self.demand(robot)
+        by_row = asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1)
+        return np.asarray(by_row[self.weather.row])
+
+    def offer_w(self, robot: Robot, *, accounts: bool = True) -> FloatArray:
+        """What the robot's own panels offer in each step, mean over the battery's voltages [W]; (n_times,)."""
+        return np.asarray(self.supply(robot, accounts=accounts).offer_w[:, 0, :].mean(axis=-1))
+
     def supply_v(self, robot: Robot) -> FloatArray:
         """Pack voltages at which the supply is tabulated: one where it does not follow the battery."""
         return _nodes(robot, SUPPLY_VOLTS if follows_battery(robot) else 1)
@@ -145,9 +155,7 @@ class Chain:
         """The month energy years would start with, for each wattage of ``supply``; (n_watts,)."""
         if robot.deployment is not None:
             return np.full(supply.watts.size, robot.deployment.first[0])
-        asked = self.demand(robot)
-        asked_w = asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1)
-        asked_w = asked_w[self.weather.row]
+        asked_w = self.asked_w(robot)
         steps = np.bincount(self.months, minlength=13)[1:]
         best = []
         for offer_w in supply.offer_w.mean(axis=-1).T:

@@ -117,9 +117,7 @@ class Frontier:
 
     def _asked_w(self) -> FloatArray:
         """All that is asked, own use included, by weather step; (n_times,)."""
-        asked = self.chain.demand(self.robot)
-        asked_w = asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1)
-        return np.asarray(asked_w[self.chain.weather.row] + self.supply.own_use_w)
+        return np.asarray(self.chain.asked_w(self.robot) + self.supply.own_use_w)
 
     def _per_wh(self) -> float:
         """Capacity when new that holds a watt-hour down to cut-off when worn [Ah/Wh]."""

@@ -9,8 +9,6 @@ from ..calendar import Lanes
 from ..storage import Balance
 from ..types import FloatArray
 
-PER_DAY = ("plane_wh_m2_day", "harvest_wh_day", "spilled_wh_day", "demand_wh_day", "unserved_wh_day", "skipped_wh_day")
-
 
 def month_sums(values: FloatArray, lanes: Lanes) -> FloatArray:
     """Values of the weather's steps (n_times,) times the hours of the lanes' steps, summed by calendar month; (12,)."""

@@ -176,7 +176,7 @@ def sun_hours(sun: SunField) -> pd.DataFrame:
 
 def _dark_spells(chain: Chain, robot: Robot) -> tuple[FloatArray, tuple[DarkSpell, ...]]:
     """Harvest of each day, and its darkest spells; those of a deployment stay within it."""
-    offer_w = np.asarray(chain.supply(robot).offer_w[:, 0, :].mean(axis=-1))
+    offer_w = chain.offer_w(robot)
     weather = chain.weather
     daily_wh, dates = days_of(offer_w, weather.times, chain.lanes(robot), zone=weather.place.time_zone)
     longest = int((~np.isnan(daily_wh)).sum(axis=1).min())

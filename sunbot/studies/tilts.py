@@ -7,10 +7,12 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from ..calendar import Lanes
 from ..inputs.robot import Robot
 from ..sky import Weather
-from ..types import FloatArray, IntArray
+from ..types import FloatArray
 from .chain import Chain
+from .months import month_hours, month_sums
 
 LOOK_YEARS = 5
 """Generated years on which mounts are compared: means by month settle long before survival does."""
@@ -115,16 +117,16 @@ def worst_ratio(chain: Chain, robot: Robot) -> float:
 
 def month_ratios(chain: Chain, robot: Robot) -> FloatArray:
     """Harvest offered over demand asked by calendar month, (12,); NaN where nothing is asked."""
-    asked = chain.demand(robot)
-    asked_w = asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1)
-    asked_wh, _ = _by_month(chain, robot, asked_w[chain.weather.row])
-    harvest_wh, _ = _by_month(chain, robot, _offer_w(chain, robot))
+    lanes = _lanes(chain, robot)
+    asked_wh = month_sums(chain.asked_w(robot), lanes)
+    harvest_wh = month_sums(chain.offer_w(robot, accounts=False), lanes)
     return np.asarray(np.divide(harvest_wh, asked_wh, out=np.full(12, np.nan), where=asked_wh > 0))
 
 
 def month_harvest_wh(chain: Chain, robot: Robot) -> FloatArray:
     """Harvest offered on a mean day of each calendar month [Wh], (12,); NaN in months the robot is not out."""
-    harvest_wh, hours = _by_month(chain, robot, _offer_w(chain, robot))
+    lanes = _lanes(chain, robot)
+    harvest_wh, hours = month_sums(chain.offer_w(robot, accounts=False), lanes), month_hours(lanes)
     return np.asarray(np.divide(harvest_wh, hours / 24.0, out=np.full(12, np.nan), where=hours > 0))
 
 
@@ -136,20 +138,9 @@ def few_years(chain: Chain, years: int) -> Chain:
     return Chain(_first_years(weather, years), seed=chain.seed)
 
 
-def _offer_w(chain: Chain, robot: Robot) -> FloatArray:
-    return np.asarray(chain.supply(robot, accounts=False).offer_w[:, 0, :].mean(axis=-1))
-
-
-def _by_month(chain: Chain, robot: Robot, power_w: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Energy [Wh] and hours by calendar month over all lanes of the robot, (12,) each."""
-    lanes = chain.lanes(robot, first_month=1)  # sums by month are the same wherever the energy year begins
-    energy = (power_w[lanes.row] * lanes.step_h).sum(axis=1)
-    return _sums(lanes.month, energy), _sums(lanes.month, lanes.step_h.sum(axis=1))
-
-
-def _sums(month: IntArray, values: FloatArray) -> FloatArray:
-    """Sum of the values of each month, January first, (12,)."""
-    return np.asarray(np.bincount(month, weights=values, minlength=13)[1:], dtype=np.float64)
+def _lanes(chain: Chain, robot: Robot) -> Lanes:
+    """Years from January on: sums by month are the same wherever the energy year begins."""
+    return chain.lanes(robot, first_month=1)
 
 
 def _turned(azimuth_deg: float) -> float:
