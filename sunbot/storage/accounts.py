@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from ..types import FloatArray
+from ..types import FloatArray, IntArray
 from .block import Block, Record, Tallies
 from .layout import OverVolts
 from .window import Parts, Window
@@ -71,25 +71,27 @@ def add_flows(sums: Sums, rows: Rows) -> Sums:
     return flows
 
 
-def trace_rows(rows: Rows, flows: Sums) -> Sums:
-    """The steps of the one design, (n_steps, n_years), as in `Trace`."""
+def trace_rows(rows: Rows, flows: Sums, *, lanes: IntArray) -> Sums:
+    """The steps of some lanes, (n_steps, n_lanes), as in `Trace`."""
     block, window = rows.block, rows.window
-    ah = float(block.ah.ravel()[0])
     per_h = np.divide(1.0, rows.hours, out=np.zeros(rows.hours.shape), where=rows.hours > 0)
-    essential = rows.read(window.essential.total, column=0) * block.designs.essential_x[0] + block.designs.extra_w[0]
+    essential_x, extra_w = (values[block.design] for values in (block.designs.essential_x, block.designs.extra_w))
+    essential = rows.read(window.essential.total, column=0) * essential_x + extra_w
     demand, served = essential.copy(), essential * (1.0 - rows.out)
     for level, done in enumerate(rows.served):
-        demand += rows.read(window.work.total, column=level) * ah * float(block.work_x[level].ravel()[0])
-        served += done * ah * per_h
-    return {
-        "harvest_w": flows["harvest"] * ah * per_h,
-        "spilled_w": flows["spilled"] * ah * per_h,
+        work_x = block.designs.work_x[window.month - 1, level][block.design]
+        demand += rows.read(window.work.total, column=level) * work_x
+        served += done * block.ah_l * per_h
+    every = {
+        "harvest_w": flows["harvest"] * block.ah_l * per_h,
+        "spilled_w": flows["spilled"] * block.ah_l * per_h,
         "demand_w": demand,
         "served_w": served,
         "soc": block.pack.soc.at(_before_boots(rows) * block.pack.places_per_wh_ah),
         "box_temp_c": np.where(rows.out > 0, rows.per_year(window.box_y), rows.per_year(window.warm_box_y)),
         "on": 1.0 - rows.out,
     }
+    return {name: values[:, lanes] for name, values in every.items()}
 
 
 def _before_boots(rows: Rows) -> FloatArray:

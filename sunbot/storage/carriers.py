@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields, replace
+from typing import Any
+
+import numpy as np
 
 from ..types import BoolArray, FloatArray, IntArray
 
@@ -46,7 +49,7 @@ class Ledger:
 
 @dataclass(frozen=True, eq=False)
 class Trace:
-    """The balance step by step, for one design; each (n_steps, n_years), in lane order. Powers are step means [W]."""
+    """The balance of the first design by step; each (n_steps, n_years), in lane order. Powers are step means [W]."""
 
     harvest_w: FloatArray
     spilled_w: FloatArray
@@ -89,3 +92,19 @@ class Balance:
     first_out: IntArray | None = None
     ledger: Ledger | None = None
     trace: Trace | None = None
+
+    def of(self, design: int) -> Balance:
+        """The balance of one design, as if it had been run alone; the trace stays that of the first."""
+        return replace(self, **_columns(self, design))
+
+
+def _columns(part: Balance | Ledger, design: int) -> dict[str, Any]:
+    """Every field of ``part`` cut down to one design."""
+    found: dict[str, Any] = {}
+    for name in (field.name for field in fields(part)):
+        value = getattr(part, name)
+        if isinstance(value, Ledger):
+            found[name] = Ledger(**_columns(value, design))
+        elif isinstance(value, np.ndarray):
+            found[name] = value[..., [design]]
+    return found

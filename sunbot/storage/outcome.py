@@ -12,6 +12,9 @@ from .block import Block, Tallies
 from .carriers import Balance, Designs, Ledger, Trace
 from .window import Source
 
+ROUNDING = 1e-12
+"""Share of the work asked that may be left over from adding up alone."""
+
 
 class Sheet:
     """Sums by month piece, (n_pieces, [n_levels,] n_years, n_designs) by name; the trace by step."""
@@ -93,7 +96,8 @@ class _Assembly:
         lost = sums.get("lost_total", np.zeros_like(sums["out_h"])) if months else sums["out_essential_wh"]
         unserved = lost * designs.essential_x + sums["out_h"] * designs.extra_w
         asked = self._asked_work()
-        skipped = np.maximum(asked - sums["served_wh_ah"] * self.ah, 0.0)
+        skipped = asked - sums["served_wh_ah"] * self.ah
+        skipped[skipped < ROUNDING * asked] = 0.0
         verdict = Balance(
             unserved_wh=self._monthly(unserved),
             skipped_wh=self._monthly(skipped.sum(axis=1)),

@@ -31,6 +31,9 @@ MOST_ROUNDS = 20
 PREROLL_H = 30 * 24.0
 """How long before a lane's start its start state is guessed from, with a full battery."""
 
+TRACED = 0
+"""The design a trace is kept of."""
+
 LANES_PER_BLOCK = 32768
 """Narrower blocks do not gain from a second thread: the interpreter lock is then held most of the time (measured)."""
 
@@ -70,15 +73,13 @@ def balance(
         Row of the demand that belongs to each weather step.
     keep : str
         "verdict" keeps what decides survival; "months" all monthly figures and the ledger; "trace" also every step
-        of the one design.
+        of the first design.
 
     Raises
     ------
     ValueError
-        A trace of several designs; voltages that miss the pack's; NaN or infinity in harvest, demand or temperature.
+        Voltages that miss the pack's; NaN or infinity in harvest, demand or temperature.
     """
-    if keep == "trace" and designs.watts_at.size != 1:
-        raise ValueError("a trace holds one design")
     series = {"offer_w": supply.offer_w, "essential": demand.essential.total_w, "work": demand.work.total_w}
     for name, values in (series | {"air_temp_c": air_temp_c}).items():
         if not np.isfinite(values).all():
@@ -309,6 +310,7 @@ class Ring:
             recorded = Rows(block, view, record)
             flows = add_flows(sums, recorded)
             add_demand(sums, recorded, tallies)
-            if self.trace:
+            lanes = np.flatnonzero(crew.designs[block.design] == TRACED)
+            if self.trace and lanes.size:
                 steps = slice(view.first, view.first + view.n)
-                self.sheet.add_trace(trace_rows(recorded, flows), steps, years=crew.years)
+                self.sheet.add_trace(trace_rows(recorded, flows, lanes=lanes), steps, years=crew.years)

@@ -12,18 +12,16 @@ import pandas as pd
 
 from .. import __version__
 from ..calendar import Lanes
-from ..harvest import Supply
 from ..harvest.temperatures import mean_cell_temp_c
 from ..inputs.robot import Robot
 from ..light import mean_plane_w_m2
 from ..sky import Weather, weather_for
-from ..storage import Balance, Trace, as_filed
+from ..storage import Balance, Trace
 from ..types import Caution, FloatArray
 from .autonomy import Autonomy, autonomy_of
 from .beside import Beside
 from .cautions import check_cautions
 from .chain import Chain
-from .designs import repeated
 from .flows import EnergyYear, Step, energy_year, light_to_panel
 from .inputs_used import InputsUsed, inputs_used
 from .months import month_table
@@ -31,11 +29,7 @@ from .plain import plain_document
 from .statistics import wilson_interval
 from .verdict import Verdict, verdict_on
 from .ways_out import Nearness, WayOut, nearness, tilt_way_out
-
-DIM_LIGHT_X = 0.9
-"""The light of the second opinion: everything 10 % darker."""
-COARSE_LIGHT_X = 0.85
-"""A climate read off the world table may be so much too bright."""
+from .what_ifs import filed_and_dimmed, worst_parked
 
 
 @dataclass(frozen=True)
@@ -68,7 +62,6 @@ class CheckResult:
     inputs: InputsUsed
     verdict: Verdict
     survival_light_minus_10: float
-    survival_worst_parked: float | None
     visits_per_year: float
     months: pd.DataFrame
     autonomy: Autonomy
@@ -84,6 +77,7 @@ class CheckResult:
     cell_temp_c: FloatArray | None = None
     ways_out: tuple[WayOut, ...] = ()
     extra_load_w: float | None = None
+    survival_worst_parked: float | None = None
 
     @property
     def met(self) -> bool:
@@ -167,37 +161,42 @@ def check(
     weather = weather_for(robot.site, years=years, seed=seed) if weather is None else weather
     chain = Chain(weather, seed=seed)
     chain.lanes(robot)  # with all that both need, before they part
-    with Beside(partial(_nearness_of, chain, robot)) as helper:
+    with Beside(partial(_aside, chain, robot)) as helper:
         helper.ask(None)
         result = check_on(chain, robot, years=years, seed=seed, trace=trace)
         tilt = None if result.met else tilt_way_out(chain, robot)
-        near: Nearness = helper.answer()
+        near, worst = helper.answer()
     ways = [*near.ways_out, *([] if tilt is None else [tilt])]
     ways.sort(key=lambda way: way.times)
-    return replace(result, ways_out=tuple(ways), extra_load_w=near.extra_load_w)
+    return replace(with_worst_parked(result, worst), ways_out=tuple(ways), extra_load_w=near.extra_load_w)
 
 
-def _nearness_of(chain: Chain, robot: Robot) -> Callable[[None], Nearness]:
-    return lambda _: nearness(chain, robot)
+def _aside(chain: Chain, robot: Robot) -> Callable[[None], tuple[Nearness, float | None]]:
+    return lambda _: (nearness(chain, robot), worst_parked(chain, robot))
+
+
+def with_worst_parked(result: CheckResult, worst: float | None) -> CheckResult:
+    """The result with the share of years alive parked the wrong way, where that differs from the answer."""
+    return result if worst == float(result.verdict.survival[0]) else replace(result, survival_worst_parked=worst)
 
 
 def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:
-    """`check` on a chain that may already hold the stages' results, without how close it was."""
+    """`check` on a chain that may already hold the stages' results, but for what is worked out beside it: how close
+    it was, and how it fares parked the wrong way.
+    """
     lanes = chain.lanes(robot)
-    balance = chain.run(robot, keep="trace" if trace else "months")
+    balance, dimmed = filed_and_dimmed(chain, robot, keep="trace" if trace else "months")
     verdict = verdict_on(balance, robot.target)
     plane_w_m2 = mean_plane_w_m2(chain.lights(robot)[0])
     months = month_table(balance, lanes, plane_w_m2)
     if balance.ledger is None:
         raise RuntimeError("the balance kept no ledger")
-    dim, dimmer, worst = _what_ifs(chain, robot)
     return CheckResult(
         robot=robot,
         weather=chain.weather,
         inputs=inputs_used(robot, chain.weather, years=verdict.years, seed=seed, first_month=lanes.first_month),
         verdict=verdict,
-        survival_light_minus_10=dim,
-        survival_worst_parked=None if worst == float(verdict.survival[0]) else worst,
+        survival_light_minus_10=float(dimmed[0]),
         visits_per_year=float(balance.visits[:, 0].mean()),
         months=months,
         autonomy=autonomy_of(chain, robot),
@@ -205,40 +204,12 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
         unserved_share=_unserved_share(balance),
         energy=energy_year(balance.ledger),
         light_steps=light_to_panel(robot, chain.lights(robot), chain.harvest_yield(robot)),
-        cautions=check_cautions(chain, robot, balance, verdict, survival_coarse=dimmer),
+        cautions=check_cautions(chain, robot, balance, verdict, survival_coarse=float(dimmed[1])),
         lanes=lanes,
         balance=balance,
         trace=balance.trace,
         plane_w_m2=plane_w_m2 if trace else None,
         cell_temp_c=mean_cell_temp_c(chain.lights(robot)[0], chain.weather_at(robot), robot) if trace else None,
-    )
-
-
-def _what_ifs(chain: Chain, robot: Robot) -> tuple[float, float, float | None]:
-    """Survival in light 10 and 15 % dimmer, and of a robot that roams but always parks the wrong way (else None)."""
-    filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
-    light_x, watts_at, offers = [DIM_LIGHT_X, COARSE_LIGHT_X], [0, 0], [chain.supply(robot)]
-    if robot.roams and robot.parked != "worst":
-        light_x, watts_at = [*light_x, 1.0], [*watts_at, 1]
-        offers.append(chain.supply(robot.model_copy(update={"parked": "worst"}), accounts=False))
-    designs = replace(
-        repeated(filed, len(light_x)), light_x=np.array(light_x), watts_at=np.array(watts_at, dtype=np.int64)
-    )
-    balance = chain.run(robot, designs, supply=_beside(offers), keep="verdict")
-    survival = verdict_on(balance, robot.target).survival
-    return float(survival[0]), float(survival[1]), float(survival[2]) if len(light_x) > 2 else None
-
-
-def _beside(offers: list[Supply]) -> Supply:
-    """Several supplies of the same robot as columns of one, without accounts."""
-    if len(offers) == 1:
-        return offers[0]
-    return replace(
-        offers[0],
-        watts=np.concatenate([offer.watts for offer in offers]),
-        offer_w=np.concatenate([offer.offer_w for offer in offers], axis=1),
-        panel_w=None,
-        wire_w=None,
     )
 
 

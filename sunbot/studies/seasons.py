@@ -16,13 +16,14 @@ from ..sky import Weather, weather_for
 from ..types import Caution, FloatArray
 from .behind_window import BehindWindow, behind_window
 from .chain import Chain
-from .checking import CheckResult, check_on
+from .checking import CheckResult, check_on, with_worst_parked
 from .dark_spells import SPELL_DAYS, DarkSpell, dark_spells, days_of
 from .effort import Watcher
 from .heading_costs import HeadingCost, heading_costs
 from .levers import Lever, levers
 from .plain import plain_document
 from .tilts import BestMount, best_mount
+from .what_ifs import worst_parked
 from .work_calendar import WorkCalendar, work_calendar
 
 FORTNIGHT_DAYS = 14
@@ -137,7 +138,8 @@ def season(
     watched = watcher or (lambda share: None)
     weather = weather_for(robot.site, years=years, seed=seed) if weather is None else weather
     chain = Chain(weather, seed=seed)
-    checked = check_on(chain, robot, years=years, seed=seed, trace=True)
+    filed = check_on(chain, robot, years=years, seed=seed, trace=True)
+    checked = with_worst_parked(filed, worst_parked(chain, robot))
     daily_wh, spells = _dark_spells(chain, robot)
     watched(0.3)
     calendar = work_calendar(chain, robot)

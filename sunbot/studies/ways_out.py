@@ -19,8 +19,10 @@ PANEL, BATTERY, DRAW, WORK = "panel", "battery", "constant draw", "skippable wor
 MOST_X = {PANEL: 10.0, BATTERY: 20.0, DRAW: 20.0, WORK: 20.0}
 """How far each lever is pushed before it is given up: as a multiple, or a share of one in it."""
 RESOLUTION = 0.02
-WIDTH = 12
 LEAST_X = 1.02
+WIDTH, MOST_WIDTH, LANES = 12, 200, 2400
+"""Steps of a lever tried at once: as many as fill so many lanes, of which fewer cost hardly less. The most resolve
+every lever in one round."""
 PANEL_STEPS = np.array([1.0, 1.04, 1.12])
 """Panels held against their own supply, above the one that as much more light would ask for."""
 LOADS_X = np.geomspace(1 / 30, 1.5, 48)
@@ -148,14 +150,13 @@ def _extra_load_w(chain: Chain, robot: Robot) -> float | None:
 def _ways_out(levers: _Levers) -> tuple[WayOut, ...]:
     """Every lever but the tilt that alone meets the target; each found by running the study."""
     high = np.array([MOST_X[name] for name in levers.names])
-    times = dict(
-        zip(levers.names, smallest(levers.meets, 0.0 * high + LEAST_X, high, rel=RESOLUTION, width=WIDTH), strict=True)
-    )
+    width = min(max(LANES // (high.size * levers.chain.weather.n_years), WIDTH), MOST_WIDTH)
+    found = smallest(levers.meets, np.full(high.size, LEAST_X), high, rel=RESOLUTION, width=width)
+    times = dict(zip(levers.names, found, strict=True))
     light_x = float(times[PANEL])
     if not np.isnan(light_x):
         times[PANEL] = levers.panel_x(light_x)
-    found = [levers.way_out(name, float(x)) for name, x in times.items() if not np.isnan(x)]
-    return tuple(found)
+    return tuple(levers.way_out(name, float(x)) for name, x in times.items() if not np.isnan(x))
 
 
 def tilt_way_out(chain: Chain, robot: Robot) -> WayOut | None:

@@ -146,6 +146,21 @@ def test_deployments_start_at_their_start_charge_and_are_not_gone_round(worlds):
     assert not np.array_equal(ring.run().lowest_soc, result.lowest_soc)
 
 
+@pytest.mark.parametrize("lanes_per_block", [10, 32768])
+def test_the_first_of_many_designs_is_what_it_is_alone(worlds, monkeypatch, lanes_per_block):
+    """Trace, months and ledger of the first design do not depend on the designs beside it, in whatever blocks."""
+    world = worlds.random_world(14, n_designs=7)
+    alone = replace(world, designs=ring.subset(world.designs, np.array([0]))).run("trace")
+    monkeypatch.setattr(ring, "LANES_PER_BLOCK", lanes_per_block)
+    beside = world.run("trace").of(0)
+    for name in ("soc", "served_w", "demand_w", "harvest_w", "on"):
+        assert getattr(beside.trace, name) == pytest.approx(getattr(alone.trace, name), rel=1e-12, abs=1e-12), name
+    for name in ("unserved_wh", "demand_wh", "lowest_soc", "outages", "first_out", "visits"):
+        assert getattr(beside, name) == pytest.approx(getattr(alone, name), rel=1e-12, abs=1e-12), name
+    assert beside.ledger.loads == pytest.approx(alone.ledger.loads, rel=1e-12)
+    assert beside.settled.shape == alone.settled.shape == (1,)
+
+
 def test_a_ring_that_never_settles_says_so_and_keeps_its_books(worlds):
     """A pack that loses a little of its charge every year, never full and never cut, is not periodic."""
     battery = worlds.ideal("li-ion", capacity_ah=10.0)
@@ -172,10 +187,8 @@ def test_many_lanes_in_blocks_on_threads_equal_few(worlds, monkeypatch):
 
 
 def test_what_the_balance_refuses(worlds):
-    """A trace of several designs, voltages that miss the pack's, and numbers that are none are a caller's mistakes."""
+    """Voltages that miss the pack's, and numbers that are none, are a caller's mistakes."""
     world = worlds.random_world(2, supply_volts=True)
-    with pytest.raises(ValueError, match="one design"):
-        world.run("trace")
     short = replace(world.supply, battery_v=world.supply.battery_v * 0.9)
     with pytest.raises(ValueError, match="battery_v must reach"):
         replace(world, supply=short).run()

@@ -1,0 +1,42 @@
+"""What would become of the robot in less light, or parked the wrong way."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Literal
+
+import numpy as np
+
+from ..inputs.robot import Robot
+from ..storage import Balance, as_filed
+from ..types import FloatArray
+from .chain import Chain
+from .designs import repeated
+from .verdict import verdict_on
+
+DIM_LIGHT_X = 0.9
+"""The light of the second opinion: everything 10 % darker."""
+COARSE_LIGHT_X = 0.85
+"""A climate read off the world table may be so much too bright."""
+
+
+def filed_and_dimmed(
+    chain: Chain, robot: Robot, *, keep: Literal["months", "trace"] = "months"
+) -> tuple[Balance, FloatArray]:
+    """The balance of the robot as filed, and the shares of years alive in light 10 and 15 % dimmer.
+
+    A run costs by its steps more than by its lanes: the three together take little longer than the first alone.
+    """
+    light_x = np.array([1.0, DIM_LIGHT_X, COARSE_LIGHT_X])
+    filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
+    designs = replace(repeated(filed, light_x.size), light_x=light_x)
+    balance = chain.run(robot, designs, keep=keep)
+    return balance.of(0), verdict_on(balance, robot.target).survival[1:]
+
+
+def worst_parked(chain: Chain, robot: Robot) -> float | None:
+    """Share of years alive if it always parks the wrong way; None where it does not roam, or parks so anyway."""
+    if not robot.roams or robot.parked == "worst":
+        return None
+    offer = chain.supply(robot.model_copy(update={"parked": "worst"}), accounts=False)
+    return float(verdict_on(chain.run(robot, supply=offer, keep="verdict"), robot.target).survival[0])
