@@ -122,9 +122,11 @@ def _of_dim_light(lights: Sequence[Light], arrays: Sequence[Array]) -> Iterator[
     """Whether most of the energy comes at a light for which data sheets say nothing."""
     dim = total = 0.0
     for light, array in zip(lights, arrays, strict=True):
-        wh = light.cells_w_m2 * (light.weight if light.cells_w_m2.shape[1] == light.weight.shape[1] else 1.0)
-        total += array.watts * float(wh.sum())
-        dim += array.watts * float(wh[light.cells_w_m2 < DIM_W_M2].sum())
+        cells_w_m2 = light.cells_w_m2
+        weight = light.weight if cells_w_m2.shape[1] == light.weight.shape[1] else np.ones((1, 1))
+        total += array.watts * float(np.einsum("th,th->", cells_w_m2, np.broadcast_to(weight, cells_w_m2.shape)))
+        at_dim = np.where(cells_w_m2 < DIM_W_M2, cells_w_m2, 0.0)
+        dim += array.watts * float(np.einsum("th,th->", at_dim, np.broadcast_to(weight, cells_w_m2.shape)))
     if dim > 0.5 * total:
         yield Caution(
             "dim-light",

@@ -88,9 +88,11 @@ class OverVolts:
         top = float(values.max()) if values.size else 0.0
         if volts == 1:
             return cls(np.ascontiguousarray(values).reshape(steps, -1), None, columns, 1, top)
-        slope = np.diff(values, axis=-1)
-        slope = np.concatenate((slope, slope[..., -1:]), axis=-1)
-        base = values - slope * np.arange(volts)
+        slope = np.empty(values.shape)
+        np.subtract(values[..., 1:], values[..., :-1], out=slope[..., :-1])
+        slope[..., -1] = slope[..., -2]
+        base = slope * np.arange(volts)
+        np.subtract(values, base, out=base)
         return cls(base.reshape(steps, -1), slope.reshape(steps, -1), columns, volts, top)
 
     def start(self, year: IntArray, column: IntArray | int) -> IntArray:

@@ -128,7 +128,7 @@ def window(source: Source, steps: slice, years: IntArray, *, layout: Layout, acc
         layout=layout,
         hours=[float(hours_y[0, 0])] * at.shape[0] if even else list(over(hours_y)),
         per_h=[1.0 / float(hours_y[0, 0])] * at.shape[0] if even else list(over(_per(hours_y))),
-        real=[None if row.all() else over(row > 0) for row in hours_y],
+        real=[None if whole else over(row > 0) for row, whole in zip(hours_y, (hours_y > 0).all(axis=1), strict=True)],
         hours_y=hours_y,
         elapsed_y=source.elapsed_h[steps][:, years],
         box_y=box_y,

@@ -29,7 +29,7 @@ from .plain import plain_document
 from .statistics import wilson_interval
 from .verdict import Verdict, verdict_on
 from .ways_out import Nearness, WayOut, nearness, tilt_way_out
-from .what_ifs import filed_and_dimmed, worst_parked
+from .what_ifs import filed_and_dimmed, parked_wrong
 
 
 @dataclass(frozen=True)
@@ -172,7 +172,11 @@ def check(
 
 
 def _aside(chain: Chain, robot: Robot) -> Callable[[None], tuple[Nearness, float | None]]:
-    return lambda _: (nearness(chain, robot), worst_parked(chain, robot))
+    def answer(_: None) -> tuple[Nearness, float | None]:
+        parked = parked_wrong(chain, robot)
+        return nearness(chain, robot, met=parked.met_as_filed), parked.survival_worst
+
+    return answer
 
 
 def with_worst_parked(result: CheckResult, worst: float | None) -> CheckResult:

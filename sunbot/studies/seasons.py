@@ -23,7 +23,7 @@ from .heading_costs import HeadingCost, heading_costs
 from .levers import Lever, levers
 from .plain import plain_document
 from .tilts import BestMount, best_mount
-from .what_ifs import worst_parked
+from .what_ifs import parked_wrong
 from .work_calendar import WorkCalendar, work_calendar
 
 FORTNIGHT_DAYS = 14
@@ -139,7 +139,7 @@ def season(
     weather = weather_for(robot.site, years=years, seed=seed) if weather is None else weather
     chain = Chain(weather, seed=seed)
     filed = check_on(chain, robot, years=years, seed=seed, trace=True)
-    checked = with_worst_parked(filed, worst_parked(chain, robot))
+    checked = with_worst_parked(filed, parked_wrong(chain, robot).survival_worst)
     daily_wh, spells = _dark_spells(chain, robot)
     watched(0.3)
     calendar = work_calendar(chain, robot)

@@ -29,7 +29,6 @@ LOADS_X = np.geomspace(1 / 30, 1.5, 48)
 """Extra loads tried, as multiples of the mean load asked: to 9 %."""
 LEAST_W, MOST_ROUNDS = 1e-3, 6
 """A robot that asks for next to nothing is tried from here on, each round 45 times as far as the one before."""
-FEW_YEARS = 5
 TILTS_DEG = np.arange(0.0, 91.0, 15.0)
 TILT_YEARS = 3
 
@@ -122,18 +121,13 @@ class Nearness:
     extra_load_w: float | None
 
 
-def nearness(chain: Chain, robot: Robot) -> Nearness:
-    """How close the robot is to the other answer, whichever its own is."""
-    # Over many years a robot that fails is told apart first: with more load it would be cut often, which is slow.
-    many_years = chain.weather.n_years > FEW_YEARS
-    if many_years and not verdict_on(chain.run(robot, keep="verdict"), robot.target).target_met[0]:
-        return Nearness(_ways_out(_Levers.of(chain, robot)), None)
-    extra_w = _extra_load_w(chain, robot)
-    return Nearness(() if extra_w is not None else _ways_out(_Levers.of(chain, robot)), extra_w)
+def nearness(chain: Chain, robot: Robot, *, met: bool) -> Nearness:
+    """How close the robot is to the other answer; ``met`` is its own."""
+    return Nearness((), _extra_load_w(chain, robot)) if met else Nearness(_ways_out(_Levers.of(chain, robot)), None)
 
 
-def _extra_load_w(chain: Chain, robot: Robot) -> float | None:
-    """Largest extra load tried up to which every smaller one fits; None where not even the robot as filed does."""
+def _extra_load_w(chain: Chain, robot: Robot) -> float:
+    """Largest extra load tried up to which every smaller one fits."""
     asked = chain.demand(robot)
     mean_w = float(asked.essential.total_w.mean() + asked.work.total_w.sum(axis=1).mean())
     extra_w = max(mean_w, LEAST_W) * np.concatenate(([0.0], LOADS_X))
@@ -142,7 +136,7 @@ def _extra_load_w(chain: Chain, robot: Robot) -> float | None:
         balance = chain.run(robot, replace(many, extra_w=extra_w), keep="verdict")
         fits = int(np.cumprod(verdict_on(balance, robot.target).target_met).sum())
         if fits < extra_w.size:
-            return float(extra_w[fits - 1]) if fits else None
+            return float(extra_w[max(fits - 1, 0)])
         extra_w = extra_w[-1] * np.concatenate(([1.0], LOADS_X / LOADS_X[0]))
     return float(extra_w[0])
 
@@ -172,8 +166,16 @@ def tilt_way_out(chain: Chain, robot: Robot) -> WayOut | None:
     if max(ratios) < LEAST_X * worst_ratio(few, robot):
         return None
     best = float(TILTS_DEG[int(np.argmax(ratios))])
-    for tilt in ((best + filed) / 2, best):
-        balance = chain.run(tilted(robot, tilt), lanes=chain.lanes(robot), keep="verdict")
-        if verdict_on(balance, robot.target).target_met[0]:
-            return WayOut("tilt", f"tilt {filed:.3g} deg -> {tilt:.3g} deg", tilt, 1.0 + abs(tilt - filed) / 90.0)
-    return None
+    if not _meets_at(chain, robot, best):
+        return None
+    half_way = (best + filed) / 2
+    least = half_way if _meets_at(chain, robot, half_way) else best
+    return WayOut("tilt", f"tilt {filed:.3g} deg -> {least:.3g} deg", least, 1.0 + abs(least - filed) / 90.0)
+
+
+def _meets_at(chain: Chain, robot: Robot, tilt_deg: float) -> bool:
+    """Whether the target is met with the first panel at another tilt, in the energy years of the robot as filed."""
+    other = tilted(robot, tilt_deg)
+    offer = chain.supply(other, accounts=False)
+    balance = chain.run(other, supply=offer, lanes=chain.lanes(robot), keep="verdict")
+    return bool(verdict_on(balance, robot.target).target_met[0])

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from typing import Literal
 
 import numpy as np
 
+from ..harvest import Supply
 from ..inputs.robot import Robot
 from ..storage import Balance, as_filed
 from ..types import FloatArray
@@ -34,9 +35,33 @@ def filed_and_dimmed(
     return balance.of(0), verdict_on(balance, robot.target).survival[1:]
 
 
-def worst_parked(chain: Chain, robot: Robot) -> float | None:
-    """Share of years alive if it always parks the wrong way; None where it does not roam, or parks so anyway."""
-    if not robot.roams or robot.parked == "worst":
-        return None
-    offer = chain.supply(robot.model_copy(update={"parked": "worst"}), accounts=False)
-    return float(verdict_on(chain.run(robot, supply=offer, keep="verdict"), robot.target).survival[0])
+@dataclass(frozen=True)
+class Parked:
+    """Whether the robot as filed meets its target, and the share of years alive if it always parks the wrong way:
+    None where it does not roam, or parks so anyway.
+    """
+
+    met_as_filed: bool
+    survival_worst: float | None
+
+
+def parked_wrong(chain: Chain, robot: Robot) -> Parked:
+    """What parking the wrong way costs, beside the robot as filed."""
+    offers = [chain.supply(robot)]
+    if robot.roams and robot.parked != "worst":
+        offers.append(chain.supply(robot.model_copy(update={"parked": "worst"}), accounts=False))
+    filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
+    designs = replace(repeated(filed, len(offers)), watts_at=np.arange(len(offers)))
+    verdict = verdict_on(chain.run(robot, designs, supply=_beside(offers), keep="verdict"), robot.target)
+    return Parked(bool(verdict.target_met[0]), float(verdict.survival[1]) if len(offers) > 1 else None)
+
+
+def _beside(offers: list[Supply]) -> Supply:
+    """Several supplies of the same robot as columns of one, without accounts."""
+    return replace(
+        offers[0],
+        watts=np.concatenate([offer.watts for offer in offers]),
+        offer_w=np.concatenate([offer.offer_w for offer in offers], axis=1),
+        panel_w=None,
+        wire_w=None,
+    )
