@@ -2,6 +2,7 @@
 
 from .carriers import Light, LightYield, Sun, mean_plane_w_m2
 from .cautions import ground_cautions
+from .headings import heading_matters
 from .level import light_on_level
 from .lighting import lights_on, parked_otherwise
 from .room import room_air_c, weather_in_room
@@ -16,6 +17,7 @@ __all__ = [
     "SunField",
     "WindowLight",
     "ground_cautions",
+    "heading_matters",
     "light_on_level",
     "lights_on",
     "mean_plane_w_m2",

@@ -19,6 +19,7 @@ class CellKind:
     efficiency : charge out over charge in, (charge, share) pairs joined linearly
     fade_pct_month : self-discharge at 20 °C [%/month]
     charge_min_c, charge_max_c : temperatures between which it may be charged [°C]
+    work_min_c, work_max_c : temperatures between which it is made to be discharged [°C]
     cold_capacity : (temperature, usable share of the capacity) pairs, ascending, the first slope goes on below
     """
 
@@ -32,6 +33,8 @@ class CellKind:
     fade_pct_month: float
     charge_min_c: float
     charge_max_c: float
+    work_min_c: float
+    work_max_c: float
     cold_capacity: tuple[tuple[float, float], ...]
 
 
@@ -53,6 +56,8 @@ CELL_KINDS: dict[str, CellKind] = {
         fade_pct_month=2.5,
         charge_min_c=0.0,
         charge_max_c=45.0,
+        work_min_c=-20.0,
+        work_max_c=60.0,
         cold_capacity=_COLD,
     ),
     "li-ion": CellKind(
@@ -66,6 +71,8 @@ CELL_KINDS: dict[str, CellKind] = {
         fade_pct_month=2.5,
         charge_min_c=0.0,
         charge_max_c=45.0,
+        work_min_c=-20.0,
+        work_max_c=60.0,
         cold_capacity=_COLD,
     ),
     "nimh": CellKind(
@@ -79,6 +86,8 @@ CELL_KINDS: dict[str, CellKind] = {
         fade_pct_month=20.0,
         charge_min_c=0.0,
         charge_max_c=45.0,
+        work_min_c=-20.0,
+        work_max_c=60.0,
         cold_capacity=_COLD,
     ),
     "lead-acid": CellKind(
@@ -92,6 +101,8 @@ CELL_KINDS: dict[str, CellKind] = {
         fade_pct_month=3.0,
         charge_min_c=-15.0,
         charge_max_c=45.0,
+        work_min_c=-20.0,
+        work_max_c=50.0,
         cold_capacity=((0.0, 0.75), (25.0, 1.0)),
     ),
 }

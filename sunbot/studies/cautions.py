@@ -10,8 +10,8 @@ from ..demand import rail_cautions
 from ..harvest import supply_cautions
 from ..inputs.robot import Robot
 from ..light import ground_cautions, window_cautions
-from ..storage import Balance, box_temp_c, resistance_ohm
-from ..types import Caution
+from ..storage import Balance, Pack, box_temp_c, resistance_ohm
+from ..types import Caution, FloatArray
 from .chain import Chain
 from .statistics import wilson_interval, years_to_settle
 from .verdict import Verdict
@@ -97,6 +97,24 @@ def _outcome(robot: Robot, balance: Balance, verdict: Verdict) -> Iterator[Cauti
         )
 
 
+def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: int) -> Iterator[Caution]:
+    """Whether the box gets colder or hotter than the cells are made to work in; the balance does not cut them off."""
+    kind = pack.kind
+    if pack.heater_w > 0:
+        box_c = np.maximum(box_c, pack.heater_on_below_c)
+    for code, beyond, bounds in (
+        ("battery-too-cold", box_c < kind.work_min_c, f"below {kind.work_min_c:g} degC, down to {box_c.min():.0f},"),
+        ("battery-too-hot", box_c > kind.work_max_c, f"above {kind.work_max_c:g} degC, up to {box_c.max():.0f},"),
+    ):
+        if beyond.any():
+            yield Caution(
+                code,
+                "battery",
+                f"The box is {bounds} for {beyond.sum() * step_h / years:.2g} h a year. Such cells are not made to work "
+                "there: they may fail, or their protection may cut the robot off, and the answer counts neither.",
+            )
+
+
 def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
     pack, air_c = chain.pack(robot), chain.weather_at(robot).table["temp_air"].to_numpy()
     coldest_c, hottest_c = (float(extreme) + robot.battery.box_rise_c for extreme in (air_c.min(), air_c.max()))
@@ -134,6 +152,7 @@ def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
                 "must not be charged; it can then only feed the loads. "
                 + ("Think of box_rise_c, heater_w or another chemistry." if code == "frost" else "Shade the box."),
             )
+    yield from _beyond_its_window(pack, box_c, step_h=weather.step_h, years=weather.n_years)
     thresholds = any(load.skip_below_soc is not None for load in robot.loads)
     if battery.chemistry == "lifepo4" and thresholds:
         yield Caution(

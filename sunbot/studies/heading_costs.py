@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 
 from ..inputs.robot import Robot
+from ..light import heading_matters
 from ..types import FloatArray
 from .chain import Chain
 from .tilts import LOOK_YEARS, few_years, month_harvest_wh
@@ -41,8 +42,7 @@ def heading_costs(chain: Chain, robot: Robot, *, years: int = LOOK_YEARS) -> tup
     """
     if robot.window is not None:
         return ()
-    turns = any(panel.tilt_deg > 0 or panel.obstructions for panel in robot.panels)
-    if not turns:
+    if not any(heading_matters(panel) for panel in robot.panels):
         return ()
     few = few_years(chain, years)
     found = [HeadingCost("as filed", month_harvest_wh(few, robot))]

@@ -53,6 +53,16 @@ def test_heat_is_told_where_the_box_is_too_hot_to_be_charged(chain, robots):
     assert "heat" in codes(chain, battery_of(robots, box_rise_c=35.0))
 
 
+def test_cells_beyond_the_window_they_are_made_for_are_told(chain, robots):
+    """Common practice: lithium cells work from -20 to 60 degC; a heater or a mild box says nothing."""
+    told = codes(chain, battery_of(robots, box_rise_c=-25.0))
+    assert "below -20 degC" in told["battery-too-cold"]
+    assert "h a year" in told["battery-too-cold"]
+    assert "above 60 degC" in codes(chain, battery_of(robots, box_rise_c=40.0))["battery-too-hot"]
+    assert "battery-too-cold" not in codes(chain, battery_of(robots, box_rise_c=-25.0, heater_w=20.0))
+    assert not {"battery-too-cold", "battery-too-hot"} & set(codes(chain, battery_of(robots)))
+
+
 def test_a_pack_too_weak_is_told(chain, robots):
     """More than the pack can give through its resistance."""
     told = codes(chain, robots.robot(watts=60.0, battery_ah=2.0, load_w=200.0))

@@ -34,6 +34,13 @@ def test_a_flat_deck_has_no_heading_to_choose(robots, chain):
     assert harvests[0] == pytest.approx(harvests[1], rel=1e-9)
 
 
+def test_a_lid_that_lies_flat_at_night_has_one(robots, chain):
+    """Flat by default, opened by day: heading matters while it is open."""
+    lid = panel(robots, tilt_deg=0.0, tilt_hours=((9, 15, 60),))
+    found = by_policy(heading_costs(chain, robots.robot().model_copy(update={"panels": (lid,)})))
+    assert np.nanmax(found["turns to sun"] / found["worst parked"]) > 1.2
+
+
 def test_policies_stand_in_their_order(robots, chain):
     """Turning to the sun beats any fixed heading to 0.1 % in each month; roaming lies between best and worst parked."""
     robot = robots.robot(heading="roams", parked="mean")
