@@ -110,8 +110,8 @@ def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: i
             yield Caution(
                 code,
                 "battery",
-                f"The box is {bounds} for {beyond.sum() * step_h / years:.2g} h a year. Such cells are not made to work "
-                "there: they may fail, or their protection may cut the robot off, and the answer counts neither.",
+                f"The box is {bounds} for {beyond.sum() * step_h / years:.2g} h a year. Such cells are not made to "
+                "work there: they may fail, or their protection may cut the robot off, and the answer counts neither.",
             )
 
 
