@@ -12,13 +12,12 @@ class HarvestYield:
     """What the cells give, of the robot as filed, mean over the weather's years [Wh per year].
 
     nominal : name-plate efficiency times light on the cells. heat : after cell temperature. low_light : after the
-    fall of efficiency in dim light (= maximum power). off_peak : where the controller holds the panel, = panel energy.
+    fall of efficiency in dim light (= maximum power).
     """
 
     nominal: float
     heat: float
     low_light: float
-    off_peak: float
 
 
 @dataclass(frozen=True, eq=False)

@@ -9,7 +9,7 @@ import numpy as np
 from ..inputs.robot import Robot
 from ..light.carriers import Light
 from ..sky.weather import Weather
-from ..types import Caution
+from ..types import BoolArray, Caution
 from .carriers import Supply
 from .controller import cold_voc_v
 from .panels import Array, above_battery_v, arrays_of, battery_v
@@ -22,7 +22,12 @@ DIM_W_M2 = 50.0
 
 
 def supply_cautions(
-    robot: Robot, weather: Weather, *, lights: Sequence[Light] = (), supply: Supply | None = None
+    robot: Robot,
+    weather: Weather,
+    *,
+    lights: Sequence[Light] = (),
+    supply: Supply | None = None,
+    within: BoolArray | None = None,
 ) -> tuple[Caution, ...]:
     """What is doubtful or dangerous about the harvest side of a robot.
 
@@ -36,6 +41,8 @@ def supply_cautions(
         Adds what dim light does.
     supply : Supply, optional
         For the robot's own watts first; adds whether the controller eats more than it gives.
+    within : (n_times,), optional
+        Steps in which the robot is out; left out, all.
 
     Raises
     ------
@@ -43,13 +50,14 @@ def supply_cautions(
         As `supply` does.
     """
     arrays = arrays_of(robot)
-    coldest_c = float(weather.table["temp_air"].min())
+    out = slice(None) if within is None else within
+    coldest_c = float(weather.table["temp_air"].to_numpy()[out].min())
     found = [caution for array in arrays for caution in _of_panel(array, robot)]
     found.extend(_of_controller(robot, arrays, coldest_c=coldest_c))
     if lights:
-        found.extend(_of_dim_light(lights, arrays))
+        found.extend(_of_dim_light(lights, arrays, out))
     if supply is not None:
-        found.extend(_of_own_use(supply))
+        found.extend(_of_own_use(supply, out))
     return tuple(found)
 
 
@@ -118,12 +126,13 @@ def _of_controller(robot: Robot, arrays: Sequence[Array], *, coldest_c: float) -
             )
 
 
-def _of_dim_light(lights: Sequence[Light], arrays: Sequence[Array]) -> Iterator[Caution]:
+def _of_dim_light(lights: Sequence[Light], arrays: Sequence[Array], out: BoolArray | slice) -> Iterator[Caution]:
     """Whether most of the energy comes at a light for which data sheets say nothing."""
     dim = total = 0.0
     for light, array in zip(lights, arrays, strict=True):
-        cells_w_m2 = light.cells_w_m2
-        weight = light.weight if cells_w_m2.shape[1] == light.weight.shape[1] else np.ones((1, 1))
+        cells_w_m2 = light.cells_w_m2[out]
+        weight = np.ones((1, 1)) if cells_w_m2.shape[1] != light.weight.shape[1] else light.weight
+        weight = weight if len(weight) == 1 else weight[out]
         total += array.watts * float(np.einsum("th,th->", cells_w_m2, np.broadcast_to(weight, cells_w_m2.shape)))
         at_dim = np.where(cells_w_m2 < DIM_W_M2, cells_w_m2, 0.0)
         dim += array.watts * float(np.einsum("th,th->", at_dim, np.broadcast_to(weight, cells_w_m2.shape)))
@@ -136,9 +145,9 @@ def _of_dim_light(lights: Sequence[Light], arrays: Sequence[Array]) -> Iterator[
         )
 
 
-def _of_own_use(supply: Supply) -> Iterator[Caution]:
+def _of_own_use(supply: Supply, out: BoolArray | slice) -> Iterator[Caution]:
     """Whether the controller draws more than it hands over."""
-    middle = supply.offer_w[:, 0, len(supply.battery_v) // 2]
+    middle = supply.offer_w[out, 0, len(supply.battery_v) // 2]
     mean_w = float(np.mean(middle))
     if mean_w <= supply.own_use_w:
         yield Caution(

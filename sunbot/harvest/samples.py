@@ -9,7 +9,7 @@ import numpy as np
 
 from ..light.carriers import Light
 from ..sky.weather import Weather
-from ..types import FloatArray, IntArray
+from ..types import AnyArray, FloatArray, IntArray
 from .cells import cell_temp_c
 from .panels import Array
 from .tables import Spots, spots
@@ -37,6 +37,10 @@ class Samples:
     def mean(self, values: FloatArray) -> FloatArray:
         """Mean over the headings of each lit step, (n_lit,)."""
         return values if self.starts is None else np.add.reduceat(values * self.weight, self.starts)
+
+    def spread(self, by_row: AnyArray) -> AnyArray:
+        """What belongs to each lit step, (n_lit,), for each sample in it."""
+        return by_row if self.starts is None else np.repeat(by_row, np.diff(self.starts, append=len(self.weight)))
 
 
 def stretches(lights: Sequence[Light], n_times: int) -> list[slice]:

@@ -12,7 +12,7 @@ import numpy as np
 from ..inputs.robot import Controller, Robot
 from ..light.carriers import Light
 from ..sky.weather import Weather
-from ..types import FloatArray, IntArray
+from ..types import BoolArray, FloatArray, IntArray
 from .carriers import HarvestYield, Supply
 from .cells import STC_W_M2
 from .controller import converted_w, shared_peak, tracked_current_a
@@ -111,7 +111,9 @@ def follows_battery(robot: Robot) -> bool:
     return False
 
 
-def harvest_yield(lights: Sequence[Light], weather: Weather, robot: Robot, supply: Supply) -> HarvestYield:
+def harvest_yield(
+    lights: Sequence[Light], weather: Weather, robot: Robot, *, within: BoolArray | None = None
+) -> HarvestYield:
     """What the cells give in a year after each step, for the robot as filed.
 
     Parameters
@@ -122,35 +124,22 @@ def harvest_yield(lights: Sequence[Light], weather: Weather, robot: Robot, suppl
         As in `supply`.
     robot : Robot
         As filed.
-    supply : Supply
-        With accounts, and the robot's own watts among its watts; its middle voltage counts.
-
-    Raises
-    ------
-    ValueError
-        A supply without accounts or without the robot's own watts.
+    within : (n_times,), optional
+        Steps that count; left out, all.
     """
-    at = np.flatnonzero(np.isclose(supply.watts, robot.watts, rtol=1e-9))
-    if supply.panel_w is None or not len(at):
-        raise ValueError("harvest_yield needs a supply with accounts for the robot's own watts")
     arrays = arrays_of(robot)
     _must_fit(lights, weather, arrays)
     nominal = heat = low_light = 0.0
     for lit in all_samples(lights, weather, arrays):
+        weight = lit.weight if within is None else lit.weight * lit.spread(within[lit.rows])
         for array, light, temp_c, spot in zip(arrays, lit.cells_w_m2, lit.temp_c, lit.at, strict=True):
-            suns = light / STC_W_M2 * lit.weight
+            suns = light / STC_W_M2 * weight
             nominal += array.watts * float(suns.sum())
             bright = spots(np.full_like(light, STC_W_M2), temp_c)
             heat += float((suns * look_up(array.peak_table, bright)[0]).sum())
             low_light += float((suns * look_up(array.peak_table, spot)[0]).sum())
-    panel_w = supply.panel_w[:, at[0], len(supply.battery_v) // 2]
     per_year = weather.step_h / weather.n_years
-    return HarvestYield(
-        nominal=nominal * per_year,
-        heat=heat * per_year,
-        low_light=low_light * per_year,
-        off_peak=float(panel_w.sum()) * per_year,
-    )
+    return HarvestYield(nominal=nominal * per_year, heat=heat * per_year, low_light=low_light * per_year)
 
 
 def _must_fit(lights: Sequence[Light], weather: Weather, arrays: Sequence[Array]) -> None:

@@ -11,7 +11,7 @@ from ..calendar import standard_clock
 from ..inputs.robot import Panel, Robot
 from ..inputs.site import Site
 from ..sky.weather import Weather
-from ..types import FloatArray, IntArray
+from ..types import BoolArray, FloatArray, IntArray
 from .along import horizons_along
 from .behind_glass import behind_glass
 from .carriers import Light, LightYield, Sun
@@ -35,7 +35,9 @@ class Outside:
     month: IntArray
 
 
-def lights_on(robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1) -> tuple[Light, ...]:
+def lights_on(
+    robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1, within: BoolArray | None = None
+) -> tuple[Light, ...]:
     """The light on each panel of ``robot``, in its order.
 
     Parameters
@@ -46,6 +48,8 @@ def lights_on(robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1) -> tup
         ``sun`` as ``sun_over(weather)`` gives it.
     seed : int
         Draws the headings of a roaming robot that stands anywhere when parked.
+    within : (n_times,), optional
+        Steps that count for the yearly figures; left out, all.
 
     Raises
     ------
@@ -62,7 +66,7 @@ def lights_on(robot: Robot, weather: Weather, sun: Sun, *, seed: int = 1) -> tup
     ]
     weights = _weights(robot, weather, cells, runs=outside.runs, seed=seed)
     return tuple(
-        Light(plane, cell, weight, _yearly(weather, outside, view=view, weight=weight, kept=keep))
+        Light(plane, cell, weight, _yearly(weather, outside, view=view, weight=weight, kept=keep, within=within))
         for plane, cell, weight, view, keep in zip(planes, cells, weights, views, kept, strict=True)
     )
 
@@ -179,8 +183,9 @@ def _yearly(
     view: View,
     weight: FloatArray,
     kept: tuple[FloatArray, FloatArray | float],
+    within: BoolArray | None,
 ) -> LightYield:
-    """Irradiation after each step, mean over years and headings."""
+    """Irradiation after each step, mean over years and headings, in the steps that count."""
     dirt, snow = kept
     per_year = weather.step_h / max(weather.n_years, 1)
     angle = _mean(outside.open, view.open, weight=weight, runs=outside.runs)
@@ -189,7 +194,7 @@ def _yearly(
     glass = _mean(outside.left, view.glass, weight=weight, runs=outside.runs)
     dirty = glass * dirt
     stages = (weather.table["ghi"].to_numpy(), angle, plane, glass, dirty, dirty * snow)
-    return LightYield(*(float(light.sum()) * per_year for light in stages))
+    return LightYield(*(float((light if within is None else light[within]).sum()) * per_year for light in stages))
 
 
 def _mean(sky: SkyParts, factors: Factors, *, weight: FloatArray, runs: list[Run]) -> FloatArray:

@@ -87,7 +87,7 @@ def _nearness(result: CheckResult) -> str:
         if result.extra_load_w == 0:
             return "How close: next to nothing more would fit, not a thirtieth of its mean load."
         return (
-            f"How close: {result.extra_load_w:.2g} W more, day and night at the battery, would still meet the target."
+            f"How close: {result.extra_load_w:.3g} W more, day and night at the battery, would still meet the target."
         )
     if result.met:
         return ""

@@ -3,7 +3,7 @@
 from .box import box_temp_c
 from .carriers import Balance, Designs, Ledger, Trace
 from .designs import as_filed, autonomy_h
-from .pack import Pack, battery_voltages, pack_of, resistance_ohm, usable_share, usable_wh
+from .pack import Pack, battery_voltages, pack_of, resistance_ohm, usable_share, usable_wh, working_weights
 from .ring import balance
 
 __all__ = [
@@ -21,4 +21,5 @@ __all__ = [
     "resistance_ohm",
     "usable_share",
     "usable_wh",
+    "working_weights",
 ]

@@ -68,7 +68,7 @@ class Balance:
     of skippable work; level_skipped_wh, level_asked_wh (12, n_levels, n_years, n_designs) the same by level;
     hours_out; lowest_soc.
     outages, longest_out_h, visits : (n_years, n_designs); an outage that runs over the seam counts where it began.
-    first_out : (n_years, n_designs) step index in the lane, -1 = none.
+    first_out : (12, n_years, n_designs) step of the lane at which the month's first outage began, -1 = none.
     settled : (n_designs,) false where the ring still moved after 20 rounds (the worse of the last two is given).
     cannot_give : (n_designs,) some step asked for more than the pack can give.
     months other than these are None with keep = "verdict". ledger with keep = "months" or "trace"; trace with "trace".

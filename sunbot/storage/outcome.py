@@ -137,8 +137,8 @@ class _Assembly:
         lowest = np.full((12, *self.sheet.lanes), np.inf)
         np.minimum.at(lowest, self.month, sums["lowest_u"])
         soc = self.source.pack.soc.at(np.where(np.isfinite(lowest), lowest, 0.0) * self.source.pack.places_per_wh_ah)
-        found = sums["first"] >= 0
-        first = np.take_along_axis(sums["first"], found.argmax(axis=0)[None], axis=0)[0]
+        first = np.full((12, *self.sheet.lanes), np.inf)
+        np.minimum.at(first, self.month, np.where(sums["first"] >= 0, sums["first"], np.inf))
         return Balance(
             unserved_wh=verdict.unserved_wh,
             skipped_wh=verdict.skipped_wh,
@@ -155,7 +155,7 @@ class _Assembly:
             lowest_soc=np.where(np.isfinite(lowest), soc, np.nan),
             outages=sums["outages"].sum(axis=0),
             longest_out_h=sums["longest_h"].max(axis=0),
-            first_out=np.where(found.any(axis=0), first, -1).astype(np.int64),
+            first_out=np.where(np.isfinite(first), first, -1).astype(np.int64),
             ledger=self._ledger() if "panel" in sums else None,
             trace=Trace(**self.sheet.trace) if self.sheet.trace else None,
         )

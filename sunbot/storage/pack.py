@@ -174,6 +174,18 @@ def battery_voltages(pack: Pack, n: int = 9) -> FloatArray:
     return np.linspace(pack.curve.rest_v[0], pack.curve.rest_v[-1], n)
 
 
+def working_weights(pack: Pack, battery_v: FloatArray) -> FloatArray:
+    """Weights of voltage nodes for a mean over the charge from cut-off to full; (n_volts,), their sum is 1.
+
+    battery_v : (n_volts,) ascending rest voltages that span the pack's, or one that stands for all.
+    A flat chemistry spends nearly all its charge near one voltage, far above the one it has when nearly empty.
+    """
+    if battery_v.size == 1:
+        return np.ones(1)
+    rest_v = np.interp(np.linspace(pack.cutoff_soc, 1.0, 1001), pack.curve.soc, pack.curve.rest_v)
+    return np.array([np.interp(rest_v, battery_v, hat).mean() for hat in np.eye(battery_v.size)])
+
+
 def usable_share(pack: Pack, temp_c: FloatArray | float) -> FloatArray:
     """Share of the capacity that can be drawn at a temperature [°C]: 1 from 25 °C up; any shape.
 

@@ -121,6 +121,7 @@ def window(source: Source, steps: slice, years: IntArray, *, layout: Layout, acc
     cold_pack = conditions(pack, box_y, skip_below_soc=demand.skip_below_soc)
     warm_pack = None if warm_y is None else conditions(pack, warm_y, skip_below_soc=demand.skip_below_soc)
     over = layout.over_years
+    whole_rows = np.asarray((hours_y > 0).all(axis=1)).tolist()
     return Window(
         n=at.shape[0],
         month=int(lanes.month[steps.start]),
@@ -128,7 +129,7 @@ def window(source: Source, steps: slice, years: IntArray, *, layout: Layout, acc
         layout=layout,
         hours=[float(hours_y[0, 0])] * at.shape[0] if even else list(over(hours_y)),
         per_h=[1.0 / float(hours_y[0, 0])] * at.shape[0] if even else list(over(_per(hours_y))),
-        real=[None if whole else over(row > 0) for row, whole in zip(hours_y, (hours_y > 0).all(axis=1), strict=True)],
+        real=[None if whole else over(row > 0) for row, whole in zip(hours_y, whole_rows, strict=True)],
         hours_y=hours_y,
         elapsed_y=source.elapsed_h[steps][:, years],
         box_y=box_y,

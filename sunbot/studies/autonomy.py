@@ -37,9 +37,8 @@ class Autonomy:
 
 def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
     """Autonomy of the robot as filed; of months equally hungry the coldest counts."""
-    lanes, supply, asked = chain.lanes(robot), chain.supply(robot), chain.demand(robot)
-    rows = chain.weather.row
-    essential_w = asked.essential.total_w.mean(axis=-1)[rows] + supply.own_use_w
+    lanes = chain.lanes(robot)
+    essential_w = chain.essential_w(robot) + robot.controller.own_use_w
     air_c = chain.weather_at(robot).table["temp_air"].to_numpy()
     hours_out = month_hours(lanes)
     months = np.flatnonzero(hours_out > 0)

@@ -38,7 +38,13 @@ def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
         *chain.weather.cautions,
         *ground_cautions(robot),
         *window_cautions(robot, chain.lights(robot)),
-        *supply_cautions(robot, chain.weather_at(robot), lights=chain.lights(robot), supply=chain.supply(robot)),
+        *supply_cautions(
+            robot,
+            chain.weather_at(robot),
+            lights=chain.lights(robot),
+            supply=chain.supply(robot),
+            within=chain.out(robot),
+        ),
         *_rails(chain, robot),
         *_battery(chain, robot),
     )
@@ -116,7 +122,7 @@ def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: i
 
 
 def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
-    pack, air_c = chain.pack(robot), chain.weather_at(robot).table["temp_air"].to_numpy()
+    pack, air_c = chain.pack(robot), _while_out(chain, robot, chain.weather_at(robot).table["temp_air"].to_numpy())
     coldest_c, hottest_c = (float(extreme) + robot.battery.box_rise_c for extreme in (air_c.min(), air_c.max()))
     cutoff_v = float(np.interp(pack.cutoff_soc, pack.curve.soc, pack.curve.rest_v))
     return rail_cautions(
@@ -130,13 +136,19 @@ def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
     )
 
 
+def _while_out(chain: Chain, robot: Robot, values: FloatArray) -> FloatArray:
+    """Values by weather step, of the steps in which the robot is out."""
+    within = chain.out(robot)
+    return values if within is None else values[within]
+
+
 def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
     battery, weather = robot.battery, chain.weather_at(robot)
     pack = chain.pack(robot)
     box_c = box_temp_c(
         weather.table["temp_air"].to_numpy(), step_h=weather.step_h, lag_h=pack.box_lag_h, rise_c=pack.box_rise_c
     )
-    offer_w = chain.offer_w(robot)
+    box_c, offer_w = (_while_out(chain, robot, values) for values in (box_c, chain.offer_w(robot)))
     offered = float(offer_w.sum())
     for code, blocked, limit_c, word in (
         ("frost", box_c < pack.charge_min_c, pack.charge_min_c, "below"),

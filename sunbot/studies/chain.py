@@ -15,8 +15,8 @@ from ..harvest import HarvestYield, Supply, follows_battery, harvest_yield, supp
 from ..inputs.robot import Robot
 from ..light import Light, Sun, lights_on, parked_otherwise, sun_over, weather_in_room
 from ..sky import Weather
-from ..storage import Balance, Designs, Pack, as_filed, balance, battery_voltages, pack_of
-from ..types import FloatArray, IntArray
+from ..storage import Balance, Designs, Pack, as_filed, balance, battery_voltages, pack_of, working_weights
+from ..types import BoolArray, FloatArray, IntArray
 
 Age = Literal["worn", "new"]
 Keep = Literal["verdict", "months", "trace"]
@@ -99,9 +99,17 @@ class Chain:
                 other = self._lights.find(_light_key(robot.model_copy(update={"parked": parked})))
                 if other is not None:
                     return parked_otherwise(other, robot, self.weather, seed=self.seed)
-            return lights_on(robot, self.weather, self.sun(), seed=self.seed)
+            return lights_on(robot, self.weather, self.sun(), seed=self.seed, within=self.out(robot))
 
         return self._lights.get(_light_key(robot), make)
+
+    def out(self, robot: Robot) -> BoolArray | None:
+        """Steps in which the robot is out, (n_times,); None where it is out all year."""
+        if robot.deployment is None:
+            return None
+        lanes, out = self.lanes(robot), np.zeros(len(self.weather.table), dtype=bool)
+        out[lanes.row[lanes.step_h > 0]] = True
+        return out
 
     def supply(self, robot: Robot, *, watts: FloatArray | None = None, accounts: bool = True) -> Supply:
         """What the panels offer at the battery, for the robot's own wattage or for each of ``watts``."""
@@ -117,7 +125,7 @@ class Chain:
 
     def harvest_yield(self, robot: Robot) -> HarvestYield:
         """What the cells give in a year after each step."""
-        return harvest_yield(self.lights(robot), self.weather_at(robot), robot, self.supply(robot))
+        return harvest_yield(self.lights(robot), self.weather_at(robot), robot, within=self.out(robot))
 
     def demand(self, robot: Robot) -> Demand:
         """What the loads ask for at the battery."""
@@ -128,14 +136,26 @@ class Chain:
         )
 
     def asked_w(self, robot: Robot) -> FloatArray:
-        """All that the loads ask for at the battery in each step, mean over its voltages [W]; (n_times,)."""
+        """All that the loads ask for at the battery in each step, mean over its charge [W]; (n_times,)."""
         asked = self.demand(robot)
-        by_row = asked.essential.total_w.mean(axis=-1) + asked.work.total_w.sum(axis=1).mean(axis=-1)
-        return np.asarray(by_row[self.weather.row])
+        by_row = asked.essential.total_w + asked.work.total_w.sum(axis=1)
+        return np.asarray((by_row @ self._at_work(robot, asked.battery_v))[self.weather.row])
+
+    def essential_w(self, robot: Robot) -> FloatArray:
+        """What the essential loads ask for at the battery in each step, mean over its charge [W]; (n_times,)."""
+        asked = self.demand(robot)
+        return np.asarray((asked.essential.total_w @ self._at_work(robot, asked.battery_v))[self.weather.row])
 
     def offer_w(self, robot: Robot, *, accounts: bool = True) -> FloatArray:
-        """What the robot's own panels offer in each step, mean over the battery's voltages [W]; (n_times,)."""
-        return np.asarray(self.supply(robot, accounts=accounts).offer_w[:, 0, :].mean(axis=-1))
+        """What the robot's own panels offer in each step, mean over the battery's charge [W]; (n_times,)."""
+        return np.asarray(self.offers_w(robot, self.supply(robot, accounts=accounts))[:, 0])
+
+    def offers_w(self, robot: Robot, supply: Supply) -> FloatArray:
+        """What each wattage offers in each step, mean over the battery's charge [W]; (n_times, n_watts)."""
+        return np.asarray(supply.offer_w @ self._at_work(robot, supply.battery_v))
+
+    def _at_work(self, robot: Robot, battery_v: FloatArray) -> FloatArray:
+        return working_weights(self.pack(robot), battery_v)
 
     def supply_v(self, robot: Robot) -> FloatArray:
         """Pack voltages at which the supply is tabulated: one where it does not follow the battery."""
@@ -148,6 +168,8 @@ class Chain:
 
     def first_month(self, robot: Robot) -> int:
         """The month energy years start with: the one after that of the largest surplus of the robot as filed."""
+        if robot.deployment is not None:
+            return robot.deployment.first[0]
         key = (_light_key(robot), robot.panels, robot.controller, robot.battery, robot.rails, robot.loads)
         return self._first_months.get(key, lambda: int(self.first_months(robot, self.supply(robot))[0]))
 
@@ -158,7 +180,7 @@ class Chain:
         asked_w = self.asked_w(robot)
         steps = np.bincount(self.months, minlength=13)[1:]
         best = []
-        for offer_w in supply.offer_w.mean(axis=-1).T:
+        for offer_w in self.offers_w(robot, supply).T:
             total = np.bincount(self.months, weights=offer_w - asked_w, minlength=13)[1:]
             best.append(int(np.argmax(np.where(steps > 0, total / np.maximum(steps, 1), -np.inf))))
         return (np.array(best) + 1) % 12 + 1
@@ -232,4 +254,4 @@ def _light_key(robot: Robot) -> Hashable:
     # behind a window the size of a panel decides how much of it the sun reaches
     sizes = () if robot.window is None else tuple(panel.total_watts for panel in robot.panels)
     ways = (robot.heading, robot.heading_deg, robot.headings, robot.parked)
-    return (robot.site, *ways, robot.window, moving, mounts, sizes)
+    return (robot.site, *ways, robot.window, moving, mounts, sizes, robot.deployment)

@@ -159,7 +159,11 @@ def check(
         The site's weather cannot be used, or no such robot can be built.
     """
     weather = weather_for(robot.site, years=years, seed=seed) if weather is None else weather
-    chain = Chain(weather, seed=seed)
+    return check_with_nearness(Chain(weather, seed=seed), robot, years=years, seed=seed, trace=trace)
+
+
+def check_with_nearness(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:
+    """`check` on a chain that may already hold the stages' results."""
     chain.lanes(robot)  # with all that both need, before they part
     with Beside(partial(_aside, chain, robot)) as helper:
         helper.ask(None)
@@ -168,7 +172,13 @@ def check(
         near, worst = helper.answer()
     ways = [*near.ways_out, *([] if tilt is None else [tilt])]
     ways.sort(key=lambda way: way.times)
-    return replace(with_worst_parked(result, worst), ways_out=tuple(ways), extra_load_w=near.extra_load_w)
+    differs = worst is not None and worst != float(result.verdict.survival[0])
+    return replace(
+        result,
+        ways_out=tuple(ways),
+        extra_load_w=near.extra_load_w,
+        survival_worst_parked=worst if differs else None,
+    )
 
 
 def _aside(chain: Chain, robot: Robot) -> Callable[[None], tuple[Nearness, float | None]]:
@@ -179,15 +189,8 @@ def _aside(chain: Chain, robot: Robot) -> Callable[[None], tuple[Nearness, float
     return answer
 
 
-def with_worst_parked(result: CheckResult, worst: float | None) -> CheckResult:
-    """The result with the share of years alive parked the wrong way, where that differs from the answer."""
-    return result if worst == float(result.verdict.survival[0]) else replace(result, survival_worst_parked=worst)
-
-
 def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:
-    """`check` on a chain that may already hold the stages' results, but for what is worked out beside it: how close
-    it was, and how it fares parked the wrong way.
-    """
+    """`check` but for what is worked out beside it: how close it was, and how it fares parked the wrong way."""
     lanes = chain.lanes(robot)
     balance, dimmed = filed_and_dimmed(chain, robot, keep="trace" if trace else "months")
     verdict = verdict_on(balance, robot.target)
@@ -195,6 +198,7 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
     months = month_table(balance, lanes, plane_w_m2)
     if balance.ledger is None:
         raise RuntimeError("the balance kept no ledger")
+    energy = energy_year(balance.ledger)
     return CheckResult(
         robot=robot,
         weather=chain.weather,
@@ -206,8 +210,8 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
         autonomy=autonomy_of(chain, robot),
         outages=_outages(balance, lanes, chain.weather),
         unserved_share=_unserved_share(balance),
-        energy=energy_year(balance.ledger),
-        light_steps=light_to_panel(robot, chain.lights(robot), chain.harvest_yield(robot)),
+        energy=energy,
+        light_steps=light_to_panel(robot, chain.lights(robot), chain.harvest_yield(robot), panel_wh=energy.panel),
         cautions=check_cautions(chain, robot, balance, verdict, survival_coarse=float(dimmed[1])),
         lanes=lanes,
         balance=balance,
@@ -220,16 +224,15 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
 def _outages(balance: Balance, lanes: Lanes, weather: Weather) -> Outages:
     if balance.outages is None or balance.longest_out_h is None or balance.first_out is None:
         raise RuntimeError("the balance kept no outages")
-    began = balance.first_out[:, 0]
-    years = np.flatnonzero(began >= 0)
-    first = None
-    if years.size:
-        steps = lanes.row[began[years], years]
-        first = weather.times[int(steps.min())].tz_convert("UTC")
+    began = balance.first_out[:, :, 0]
+    month, year = np.nonzero(began >= 0)
+    # The last energy year runs on into the head of the weather: the first step of all is the first outage.
+    first = None if not year.size else weather.times[int(lanes.row[began[month, year], year].min())].tz_convert("UTC")
+    n_years = began.shape[1]
     hours, count = float(balance.hours_out[:, :, 0].sum()), float(balance.outages[:, 0].sum())
     return Outages(
-        hours_per_year=hours / began.size,
-        count_per_year=count / began.size,
+        hours_per_year=hours / n_years,
+        count_per_year=count / n_years,
         longest_h=float(balance.longest_out_h[:, 0].max()),
         first=first,
         until_restart_h=hours / count if count > 0 else None,

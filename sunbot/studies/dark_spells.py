@@ -154,10 +154,12 @@ def days_of(watts: FloatArray, times: pd.DatetimeIndex, lanes: Lanes, *, zone: s
 
     Parameters
     ----------
-    watts, times : (n_times,)
-        Light [W/m2] or harvest [W] at the middles of the steps, UTC.
+    watts : (n_steps, n_years)
+        Light [W/m2] or harvest [W] in the steps of the lanes.
+    times : (n_times,)
+        Middles of the weather's steps, UTC.
     lanes : Lanes
-        The same steps as energy years of whole days.
+        Energy years of whole days.
     zone : str
         Of the site.
 
@@ -168,7 +170,7 @@ def days_of(watts: FloatArray, times: pd.DatetimeIndex, lanes: Lanes, *, zone: s
     per_day = round(24.0 / float(lanes.step_h.max()))
     n_years = lanes.row.shape[1]
     shape = (-1, per_day, n_years)
-    energy = (watts[lanes.row] * lanes.step_h).reshape(shape).sum(axis=1)
+    energy = (watts * lanes.step_h).reshape(shape).sum(axis=1)
     there = lanes.step_h.reshape(shape).sum(axis=1) > 0.0
     day = standard_clock(times, zone).day[lanes.row].reshape(shape)[:, 0]
     return np.where(there, energy, np.nan).T, day.T.astype("datetime64[D]")

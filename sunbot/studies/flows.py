@@ -31,13 +31,18 @@ class EnergyYear:
     stored: float
 
 
-def light_to_panel(robot: Robot, lights: tuple[Light, ...], harvest: HarvestYield) -> tuple[Step, ...]:
-    """What each step from the light on the level to the panel's terminals takes, in rated watt-hours a year."""
+def light_to_panel(
+    robot: Robot, lights: tuple[Light, ...], harvest: HarvestYield, *, panel_wh: float
+) -> tuple[Step, ...]:
+    """What each step from the light on the level to the panel's terminals takes, in rated watt-hours a year.
+
+    ``panel_wh`` : what leaves the terminals in a year of the balance, where the controller holds the panel.
+    """
     sums = {"level": 0.0, "angle": 0.0, "horizon": 0.0, "glass": 0.0, "dirt": 0.0, "snow": 0.0}
     for panel, light in zip(robot.panels, lights, strict=True):
         for name in sums:
             sums[name] += panel.total_watts * getattr(light.yearly, name) / STANDARD_W_M2
-    left = [*sums.values(), harvest.heat, harvest.low_light, harvest.off_peak]
+    left = [*sums.values(), harvest.heat, harvest.low_light, panel_wh]
     names = ("angle", "horizon", "glass", "dirt", "snow", "heat", "low-light", "off-peak")
     return tuple(Step(name, before - after) for name, (before, after) in zip(names, pairwise(left), strict=True))
 

@@ -134,6 +134,6 @@ class Frontier:
         """Where to look first: around what the running deficit asks for, for each wattage [Ah]."""
         lanes = self.chain.lanes(self.robot, first_month=int(self.first_months[0]))
         needed = years_needed(self.robot.target, lanes.row.shape[1])
-        deficit_wh = largest_deficit_wh(self.supply.offer_w.mean(axis=2), self._asked_w(), lanes)
+        deficit_wh = largest_deficit_wh(self.chain.offers_w(self.robot, self.supply), self._asked_w(), lanes)
         need_ah = deficit_to_cover_wh(deficit_wh, needed) * self._per_wh()
         return BRACKET_BELOW * need_ah, BRACKET_ABOVE * need_ah

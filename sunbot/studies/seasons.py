@@ -16,14 +16,13 @@ from ..sky import Weather, weather_for
 from ..types import Caution, FloatArray
 from .behind_window import BehindWindow, behind_window
 from .chain import Chain
-from .checking import CheckResult, check_on, with_worst_parked
+from .checking import CheckResult, check_with_nearness
 from .dark_spells import SPELL_DAYS, DarkSpell, dark_spells, days_of
 from .effort import Watcher
 from .heading_costs import HeadingCost, heading_costs
 from .levers import Lever, levers
 from .plain import plain_document
 from .tilts import BestMount, best_mount
-from .what_ifs import parked_wrong
 from .work_calendar import WorkCalendar, work_calendar
 
 FORTNIGHT_DAYS = 14
@@ -138,9 +137,8 @@ def season(
     watched = watcher or (lambda share: None)
     weather = weather_for(robot.site, years=years, seed=seed) if weather is None else weather
     chain = Chain(weather, seed=seed)
-    filed = check_on(chain, robot, years=years, seed=seed, trace=True)
-    checked = with_worst_parked(filed, parked_wrong(chain, robot).survival_worst)
-    daily_wh, spells = _dark_spells(chain, robot)
+    checked = check_with_nearness(chain, robot, years=years, seed=seed, trace=True)
+    daily_wh, spells = _dark_spells(checked, seed=seed)
     watched(0.3)
     calendar = work_calendar(chain, robot)
     watched(0.7)
@@ -176,15 +174,16 @@ def sun_hours(sun: SunField) -> pd.DataFrame:
     return table
 
 
-def _dark_spells(chain: Chain, robot: Robot) -> tuple[FloatArray, tuple[DarkSpell, ...]]:
+def _dark_spells(checked: CheckResult, *, seed: int) -> tuple[FloatArray, tuple[DarkSpell, ...]]:
     """Harvest of each day, and its darkest spells; those of a deployment stay within it."""
-    offer_w = chain.offer_w(robot)
-    weather = chain.weather
-    daily_wh, dates = days_of(offer_w, weather.times, chain.lanes(robot), zone=weather.place.time_zone)
+    trace, weather = checked.trace, checked.weather
+    if trace is None:
+        raise RuntimeError("the season needs a check with its trace")
+    daily_wh, dates = days_of(trace.harvest_w, weather.times, checked.lanes, zone=weather.place.time_zone)
     longest = int((~np.isnan(daily_wh)).sum(axis=1).min())
     lengths = tuple(days for days in SPELL_DAYS if days <= longest)
-    ring = robot.deployment is None
-    return daily_wh, dark_spells(daily_wh, dates, lengths=lengths, seed=chain.seed, ring=ring)
+    ring = checked.robot.deployment is None
+    return daily_wh, dark_spells(daily_wh, dates, lengths=lengths, seed=seed, ring=ring)
 
 
 def _charge_fan(checked: CheckResult) -> pd.DataFrame:

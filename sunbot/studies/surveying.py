@@ -91,7 +91,7 @@ def survey(site: Site, *, weather: Weather | None = None, years: int = 50, seed:
     lanes = energy_years(
         weather.times, step_h=weather.step_h, zone=weather.place.time_zone, first_month=brightest % 12 + 1
     )
-    daily_wh_m2, dates = days_of(level_w_m2, weather.times, lanes, zone=weather.place.time_zone)
+    daily_wh_m2, dates = days_of(level_w_m2[lanes.row], weather.times, lanes, zone=weather.place.time_zone)
     n_years = daily_wh_m2.shape[0]
     return SurveyResult(
         site=site,

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -33,6 +34,19 @@ TILTS_DEG = np.arange(0.0, 91.0, 15.0)
 TILT_YEARS = 3
 
 
+def rounded_up(value: float, digits: int) -> float:
+    """To so many significant digits, never less: what is printed is at least what was found to be enough."""
+    return -rounded_down(-value, digits)
+
+
+def rounded_down(value: float, digits: int) -> float:
+    """To so many significant digits, never more."""
+    if value == 0.0:
+        return 0.0
+    scale = 10.0 ** (digits - 1 - math.floor(math.log10(abs(value))))
+    return math.floor(value * scale + 1e-9) / scale
+
+
 @dataclass(frozen=True)
 class WayOut:
     """One change that alone meets the target.
@@ -60,7 +74,7 @@ class _Levers:
     @classmethod
     def of(cls, chain: Chain, robot: Robot) -> _Levers:
         asked = chain.demand(robot)
-        least_w = float(asked.essential.total_w.mean(axis=-1).min())
+        least_w = float(chain.essential_w(robot).min())
         n_levels = len(asked.level_loads)
         names = (PANEL, BATTERY) + ((DRAW,) if least_w > 0 else ()) + ((WORK,) if n_levels else ())
         return cls(chain, robot, names, as_filed(robot, n_levels=n_levels), least_w)
@@ -96,17 +110,18 @@ class _Levers:
         """A found ratio in words."""
         robot, battery_ah = self.robot, self.robot.battery.capacity_ah
         if name == PANEL:
-            value = robot.watts * times
+            value = rounded_up(robot.watts * times, 4)
             return WayOut(name, f"panel {robot.watts:.4g} W -> {value:.4g} W", value, times)
         if name == BATTERY:
-            value = battery_ah * times
+            value = rounded_up(battery_ah * times, 4)
             return WayOut(name, f"battery {battery_ah:.4g} Ah -> {value:.4g} Ah", value, times)
         if name == DRAW:
-            value = float(self.less_w(times))
+            value = rounded_up(float(self.less_w(times)), 3)
             of = f"of {self.least_essential_w:.3g} W at the battery"
             return WayOut(name, f"draw {value:.3g} W less, day and night ({of})", value, times)
         loads = ", ".join(load.name for load in robot.loads if load.skip_below_soc is not None)
-        return WayOut(name, f"skippable work ({loads}) cut to {1.0 / times:.0%} of its minutes", 1.0 / times, times)
+        share = rounded_down(1.0 / times, 2)
+        return WayOut(name, f"skippable work ({loads}) cut to {100 * share:g} % of its minutes", share, times)
 
 
 @dataclass(frozen=True)
@@ -136,9 +151,9 @@ def _extra_load_w(chain: Chain, robot: Robot) -> float:
         balance = chain.run(robot, replace(many, extra_w=extra_w), keep="verdict")
         fits = int(np.cumprod(verdict_on(balance, robot.target).target_met).sum())
         if fits < extra_w.size:
-            return float(extra_w[max(fits - 1, 0)])
+            return rounded_down(float(extra_w[max(fits - 1, 0)]), 3)
         extra_w = extra_w[-1] * np.concatenate(([1.0], LOADS_X / LOADS_X[0]))
-    return float(extra_w[0])
+    return rounded_down(float(extra_w[0]), 3)
 
 
 def _ways_out(levers: _Levers) -> tuple[WayOut, ...]:

@@ -12,6 +12,7 @@ from ..storage import Designs, as_filed
 from ..types import BoolArray, FloatArray, IntArray
 from .chain import Chain
 from .designs import repeated
+from .months import month_hours
 from .verdict import Verdict, verdict_on
 
 STEP_MIN = 5.0
@@ -35,7 +36,8 @@ class CalendarEntry:
 class WorkCalendar:
     """Minutes of every skippable load by month.
 
-    factors : (12,) what each month multiplies the filed minutes by, no load beyond its hours; 0 where none works.
+    factors : (12,) what each month multiplies the filed minutes by, no load beyond its hours; 0 where none works or
+        the robot is not out.
     step, step_min : the smallest step of a factor, and what it is in minutes of the longest load.
     bound : (12,) whether one more step in that month alone fails the target; else its hours are used up, or none works.
     possible : false where the target is missed even with no skippable work at all.
@@ -80,7 +82,7 @@ def work_calendar(chain: Chain, robot: Robot) -> WorkCalendar | None:
         steps[np.argmin(np.where(open_months, steps, trial.top))] -= 1
         confirmed = _meets(chain, trial, steps)
     factors = trial.factors(steps)
-    return WorkCalendar(_entries(loads, factors), factors, step, step_min, bound, possible, confirmed)
+    return WorkCalendar(_entries(loads, factors, trial.out), factors, step, step_min, bound, possible, confirmed)
 
 
 def calendar_robot(robot: Robot, factors: FloatArray) -> Robot:
@@ -114,9 +116,10 @@ class _Trial:
 
     def __init__(self, chain: Chain, robot: Robot, step: float, *, loads: list[Load]) -> None:
         self.robot = robot
-        self.works = np.array([any(month in load.months for load in loads) for month in range(1, 13)])
         self._chain, self._step = chain, step
         self._lanes = chain.lanes(robot)
+        self.out: BoolArray = month_hours(self._lanes) > 0
+        self.works = self.out & [any(month in load.months for load in loads) for month in range(1, 13)]
         levels = chain.demand(robot).level_loads
         self._filed: Designs = as_filed(robot, n_levels=len(levels))
         most = {load.name: 1.0 / load.on_fraction for load in loads}
@@ -200,12 +203,12 @@ def _meets(chain: Chain, trial: _Trial, steps: IntArray) -> bool:
     return bool(verdict_on(chain.run(fed_back, keep="verdict"), fed_back.target).target_met[0])
 
 
-def _entries(loads: list[Load], factors: FloatArray) -> tuple[CalendarEntry, ...]:
+def _entries(loads: list[Load], factors: FloatArray, out: BoolArray) -> tuple[CalendarEntry, ...]:
     return tuple(
         CalendarEntry(month, load.name, round(_hours_a_day(load) * 60.0 * _share(load, factors, month), 3))
         for month in range(1, 13)
         for load in loads
-        if month in load.months
+        if month in load.months and out[month - 1]
     )
 
 

@@ -195,14 +195,24 @@ def test_yield_goes_down_step_by_step(make_robot, make_weather, make_light):
     weather, lights = make_weather(np.full(n, 35.0)), (make_light(cells),)
     for controller in ({"kind": "mppt"}, {"kind": "pwm"}):
         robot = make_robot({}, **controller)
-        made = supply(lights, weather, robot, watts=[20.0, 40.0], battery_v=[12.8, 13.0, 13.2])
-        found = harvest_yield(lights, weather, robot, made)
+        panel_w = supply(lights, weather, robot, watts=[40.0], battery_v=[13.0]).panel_w.sum()
+        found = harvest_yield(lights, weather, robot)
         assert found.nominal == pytest.approx(40.0 * cells.mean(axis=1).sum() / 1000.0, rel=1e-9)
-        assert found.nominal > found.heat > found.low_light >= found.off_peak * (1 - 1e-9)
-        assert found.off_peak == pytest.approx(made.panel_w[:, 1, 1].sum(), rel=1e-12)
+        assert found.nominal > found.heat > found.low_light >= panel_w * (1 - 1e-9)
         if controller["kind"] == "mppt":
-            assert found.off_peak == pytest.approx(found.low_light, rel=1e-4)
+            assert panel_w == pytest.approx(found.low_light, rel=1e-4)
         else:
-            assert found.off_peak < 0.95 * found.low_light
-    with pytest.raises(ValueError, match="own watts"):
-        harvest_yield(lights, weather, robot, supply(lights, weather, robot, watts=[20.0], battery_v=[13.0]))
+            assert panel_w < 0.95 * found.low_light
+
+
+def test_yield_of_the_steps_that_count(make_robot, make_weather, make_light):
+    """What two halves of a year give adds up to the whole, under several headings and with dark steps among them."""
+    rng = np.random.default_rng(10)
+    n = 8760
+    cells = rng.uniform(-400, 900, (n, 3)).clip(0.0)
+    weather, lights = make_weather(rng.uniform(-10, 35, n)), (make_light(cells),)
+    out = rng.random(n) < 0.3
+    whole, part, rest = (harvest_yield(lights, weather, make_robot({}), within=within) for within in (None, out, ~out))
+    for name in ("nominal", "heat", "low_light"):
+        assert getattr(part, name) + getattr(rest, name) == pytest.approx(getattr(whole, name), rel=1e-9)
+    assert part.nominal == pytest.approx(40.0 * cells[out].mean(axis=1).sum() / 1000.0, rel=1e-9)

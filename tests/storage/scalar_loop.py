@@ -84,7 +84,7 @@ class Year:
     visits: int = 0
     outages: int = 0
     longest_h: float = 0.0
-    first_out: int = -1
+    first_out: list = field(default_factory=lambda: [-1] * 12)
     cannot_give: bool = False
     monthly: dict = field(default_factory=lambda: {name: [0.0] * 12 for name in MONTHLY})
     spilled: list = field(default_factory=lambda: [0.0] * 12)
@@ -372,8 +372,8 @@ class Walk:
         out = self.out
         self.on, self.cut_at_h = False, self.clock_h + after_h
         out.outages += 1
-        if out.first_out < 0:
-            out.first_out = self.s
+        if out.first_out[self.m] < 0:
+            out.first_out[self.m] = self.s
 
     def not_served(self, hours, essential, work):
         monthly = self.out.monthly

@@ -38,6 +38,29 @@ def test_padding_is_no_dark_step():
     assert darkest_week_w(watts, hours, ring=True) == pytest.approx(3.0)
 
 
+@pytest.mark.parametrize(("chemistry", "cells"), [("lifepo4", 4), ("li-ion", 3), ("nimh", 10), ("lead-acid", 6)])
+@pytest.mark.parametrize("rail", ["none", "linear"])
+def test_hours_in_the_dark_are_those_of_the_balance(robots, chemistry, cells, rail):
+    """A load of so many amperes, straight or behind a linear rail, at the voltages a discharging pack really has."""
+    rails = [{"name": "logic", "kind": rail} | ({} if rail == "none" else {"volts": 5.0, "idle_a": 0.005})]
+    battery = {"chemistry": chemistry, "cells_in_series": cells, "capacity_ah": 12.0, "self_discharge_pct_month": 0.0}
+    robot = robots.robot(
+        watts=1e-4,
+        controller={"kind": "mppt", "own_use_w": 0.0},
+        battery=battery,
+        rail=rails,
+        load=[{"name": "computer", "rail": "logic", "amps": 0.25}],
+        deployment={"from": "05-01", "to": "06-30"},
+    )
+    mild = robots.quick_weather(robots.hill(), years=1, every=1)
+    mild = replace(mild, table=mild.table.assign(temp_air=25.0))
+    chain = Chain(mild)
+    trace = chain.run(robot, keep="trace").trace
+    hours = float(trace.on[: int(np.argmax(trace.on[:, 0] < 1)) + 1, 0].sum())
+    # 2 %: the draw is taken at the pack's rest voltage, the balance has the drop in its resistance too
+    assert autonomy_of(chain, robot).dark_worn_h == pytest.approx(hours, rel=0.02)
+
+
 def test_hours_in_the_dark_are_usable_energy_over_the_draw(chain, robots):
     """At a small draw, where losses are small: usable watt-hours over watts, worn and new, at most a hair less."""
     robot = robots.robot(load_w=0.2, battery_ah=20.0)

@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import pytest
 
+from sunbot.inputs.robot import Deployment
 from sunbot.studies.cautions import check_cautions, standing_cautions
 from sunbot.studies.chain import Chain
 from sunbot.studies.verdict import verdict_on
@@ -46,6 +47,16 @@ def test_frost_is_told_where_it_costs_harvest_and_not_of_a_warm_or_heated_box(ch
     assert "0 degC" in codes(chain, battery_of(robots))["frost"]
     assert "frost" not in codes(chain, battery_of(robots, box_rise_c=15.0))
     assert "frost" not in codes(chain, battery_of(robots, heater_w=20.0))
+
+
+def test_frost_counts_while_the_robot_is_out(chain, robots):
+    """A winter deployment meets it all along, a summer one never; neither is told the year's share."""
+    winter, summer = (
+        codes(chain, battery_of(robots, box_rise_c=-4.0).model_copy(update={"deployment": Deployment(**days)}))
+        for days in ({"from": "12-01", "to": "02-20"}, {"from": "06-01", "to": "08-31"})
+    )
+    assert int(winter["frost"].split("%")[0]) > 50
+    assert "frost" not in summer
 
 
 def test_heat_is_told_where_the_box_is_too_hot_to_be_charged(chain, robots):

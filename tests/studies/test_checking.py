@@ -113,6 +113,33 @@ def test_the_steps_from_light_to_panel_end_at_the_panel(answer):
     assert level_wh - taken == pytest.approx(document["energy_wh_per_year"]["in"]["panel"], rel=0.005)
 
 
+@pytest.mark.parametrize("chemistry", [("lifepo4", 4), ("li-ion", 3)], ids=lambda pair: pair[0])
+def test_the_steps_end_at_the_panel_of_a_pwm_robot_that_is_out_for_part_of_the_year(robots, weather, chemistry):
+    """Light counts while it is out, and the last step is what the balance took, at the voltages it had."""
+    battery = {"chemistry": chemistry[0], "cells_in_series": chemistry[1], "capacity_ah": 12.0}
+    robot = robots.robot(battery=battery, controller={"kind": "pwm"}, deployment={"from": "04-10", "to": "06-20"})
+    answer = check(robot, weather=weather, years=3)
+    month_day = np.array([100 * t.month + t.day for t in weather.times.tz_convert("Etc/GMT-1")])
+    out = (month_day >= 410) & (month_day <= 620)
+    level_wh = robot.watts * float(weather.table["ghi"][out].sum()) * weather.step_h / 3.0 / 1000.0
+    taken = sum(step.wh_per_year for step in answer.light_steps)
+    # as above
+    assert level_wh - taken == pytest.approx(answer.energy.panel, rel=0.005)
+    assert all(step.wh_per_year > 0 for step in answer.light_steps if step.step in ("glass", "low-light", "off-peak"))
+
+
+def test_the_first_outage_is_the_first_of_the_weather(robots):
+    """Also where the last energy year runs on into the head of the weather, and was out before that already."""
+    weather = robots.quick_weather(robots.hill(), years=2)
+    answer = check(robots.robot(watts=8.0, load_w=0.6), weather=weather, years=2, trace=True)
+    on, lanes = answer.trace.on, answer.lanes
+    before = np.concatenate([on[-1:, lanes.before], on[:-1]])
+    began = weather.times[lanes.row[(on < 1) & (before == 1)]]
+    assert lanes.first_month != 1
+    assert began.month.isin([1, 2]).any()
+    assert answer.outages.first == began.min()
+
+
 def test_the_months_add_up_to_the_trace(answer):
     """The steps written to CSV hold the energy that the months tell."""
     trace, lanes = answer.trace, answer.lanes

@@ -7,6 +7,7 @@ import pytest
 
 from sunbot.inputs.site import Site
 from sunbot.sky import weather_for
+from sunbot.studies import check
 from sunbot.studies.chain import Chain
 from sunbot.studies.dark_spells import fitted_low, low_interval, lowest_sums
 from sunbot.studies.seasons import season, sun_hours
@@ -45,6 +46,14 @@ def test_the_document_has_all_words_of_check_and_of_the_season(found):
     assert {len(cost["harvest_wh_day"]) for cost in document["headings"]} == {12}
     assert [row["month"] for row in document["sun_hours"]] == list(range(1, 13))
     assert document["best_tilt_deg"] == document["best_mount"]["tilt_deg"]
+
+
+def test_the_words_of_check_say_what_check_says(robots, found):
+    """Also how close it was: the ways out, or the load that would still fit."""
+    whole, checked = found.to_dict(), check(found.robot, weather=found.check.weather).to_dict()
+    assert not found.check.met
+    assert whole["ways_out"]
+    assert {word: whole[word] for word in checked} == checked
 
 
 def test_daily_harvest_sums_to_that_of_the_months(found):

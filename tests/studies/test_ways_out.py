@@ -6,6 +6,18 @@ from sunbot.inputs.robot import Load, Rail
 from sunbot.studies import check
 from sunbot.studies.resizing import resized
 from sunbot.studies.tilts import tilted
+from sunbot.studies.ways_out import rounded_down, rounded_up
+
+
+@pytest.mark.parametrize("value", [0.3158, 64.784, 123456.7, 0.0009996, 5.0, 0.1 + 0.2])
+def test_what_is_printed_is_never_short_of_what_was_found(value):
+    """Rounded to the safe side, by less than one in the last digit."""
+    for digits in (2, 3, 4):
+        up, down = rounded_up(value, digits), rounded_down(value, digits)
+        assert down <= value * (1 + 1e-12)
+        assert up >= value * (1 - 1e-12)
+        assert up - down <= 1.001 * value * 10.0 ** (1 - digits)
+        assert float(f"{up:.{digits}g}") == pytest.approx(up, rel=1e-12)
 
 
 @pytest.fixture(scope="module")

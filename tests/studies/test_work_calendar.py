@@ -51,6 +51,15 @@ def by_traction_in_a_deployment(robots):
     )
 
 
+def test_months_in_which_the_robot_is_not_out_promise_nothing(robots):
+    """A deployment from October to January: no entry for the other months, no work in them."""
+    robot = by_traction_in_a_deployment(robots)
+    calendar = work_calendar(Chain(robots.quick_weather(robot.site, years=2)), robot)
+    assert {entry.month for entry in calendar.entries} == {10, 11, 12, 1}
+    assert not calendar.factors[1:9].any()
+    assert not calendar.bound[1:9].any()
+
+
 @pytest.mark.parametrize("make", [one_work, two_works_on_one_wire, by_traction_in_a_deployment])
 def test_calendar_fed_back_meets_the_target_and_one_more_step_fails_it(robots, make):
     """The robot with the calendar written into it passes; one step more in the tightest month, and it fails."""
