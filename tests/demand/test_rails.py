@@ -30,6 +30,13 @@ def test_a_linear_rail_takes_the_output_current_at_battery_voltage():
     assert taken == pytest.approx([2.4, 1.0, 1.0])
 
 
+def test_a_linear_rail_loses_its_diode_however_low_the_battery():
+    """Output current times drop is lost in the diode at least, also where the battery is under output and drop."""
+    # First principles: the output's current flows through the diode.
+    taken = battery_per_output("linear", np.array([12.0, 5.4, 5.0]), volts=5.0, efficiency=0.9, diode_drop_v=0.7)
+    assert taken == pytest.approx([2.4, 1.0 + 0.7 / 5.0, 1.0 + 0.7 / 5.0])
+
+
 def test_a_diode_loses_its_drop_times_the_current_behind_it():
     """Before a converter: 0.4 V times the input current is lost; a straight rail sees the voltage behind it."""
     out_w, drop_v = 10.0, 0.4

@@ -1,4 +1,8 @@
+"""Drive power from mass, speed and ground."""
+
 from __future__ import annotations
+
+from math import radians, tan
 
 import pytest
 
@@ -24,3 +28,11 @@ def test_a_steeper_or_softer_way_takes_more():
     base_w = traction_w(20.0, 0.5, **ROVER)
     assert traction_w(20.0, 0.5, **{**ROVER, "slope_deg": 5.0}) > base_w
     assert traction_w(20.0, 0.5, **{**ROVER, "rolling_resistance": 0.1}) == pytest.approx(2 * base_w)
+
+
+def test_on_the_slope_whose_tangent_is_the_rolling_resistance_it_rolls_by_itself():
+    """Down the angle of repose, tan a = c, neither a push nor a brake is needed."""
+    # Published: Coulomb's law of friction (1785), the angle of repose; steep, where c and c cos a differ.
+    repose_deg = 35.0
+    down = {"rolling_resistance": tan(radians(repose_deg)), "slope_deg": -repose_deg, "drivetrain_efficiency": 1.0}
+    assert traction_w(20.0, 0.5, **down) == pytest.approx(0.0, abs=1e-9)

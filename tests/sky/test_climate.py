@@ -249,3 +249,15 @@ def test_a_month_at_the_clear_sky_is_met_and_said():
     weather = generated_weather(site(ghi=tuple(ghi)), years=100, seed=1)
     assert "above-clear-sky" in [caution.code for caution in weather.cautions]
     assert monthly_means(years_of(weather))[:, 5].mean() == pytest.approx(ghi[5], rel=0.005)
+
+
+@pytest.mark.parametrize("name", [name for name in PLACES if name != "polar"])
+def test_the_warmest_hour_follows_the_noon_of_its_own_light(name):
+    """East or west of its clock's meridian, a place is warmest 2 to 3 hours after the middle of its day's light."""
+    table = generated_weather(PLACES[name], years=3, seed=1).table
+    light, air_c = (table[column].to_numpy().reshape(-1, 24).mean(axis=0) for column in ("ghi", "temp_air"))
+    middles = np.arange(24) + 0.5
+    noon_h = float(light @ middles / light.sum())
+    # Common practice: two to three hours after noon; half an hour more, since only the hours' middles are seen, and
+    # half an hour for the equation of time and clouds that are no mirror of the morning's.
+    assert 1.5 < middles[air_c.argmax()] - noon_h < 3.5

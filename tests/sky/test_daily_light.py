@@ -6,7 +6,17 @@ import numpy as np
 import pytest
 from scipy.special import ndtr
 
-from sunbot.sky.daily_light import clearness, mean_clearness, month_light, shape_for, top_clearness
+from sunbot.sky.daily_light import (
+    MonthLight,
+    clearness,
+    daily_scores,
+    mean_clearness,
+    month_light,
+    shape_for,
+    top_clearness,
+)
+from sunbot.sky.draws import draw_years
+from sunbot.sky.reference_sky import DAY_MONTH
 
 SHARE = (np.arange(200_000) + 0.5) / 200_000
 
@@ -54,3 +64,16 @@ def test_dark_month_has_no_light():
     """Polar night: a month of no light stays one."""
     month = month_light(0.0, 0.0, np.zeros(31), keep=0.29, variation=0.2)
     assert (month.share_of_clear(SHARE) == 0.0).all()
+
+
+def test_bad_months_come_in_company():
+    """A month whose shock is all of it correlates by 0.3 with the next and by its square with the one after."""
+    # Common practice: 0.3. Published: Yule, Phil. Trans. A 226 (1927) 267: a first-order autoregression
+    # correlates by rho^lag.
+    months = tuple(MonthLight(0.0, 0.04, 0.65, 0.68, 0.29, shock=1.0) for _ in range(12))
+    scores = daily_scores(months, draw_years(3, first=1, years=1500))
+    shocks = scores[:, np.flatnonzero(np.diff(DAY_MONTH, prepend=-1))]
+    assert (scores == shocks[:, DAY_MONTH]).all()
+    # 0.03: four standard errors of a correlation of 18,000 months
+    for lag, wish in ((1, 0.3), (2, 0.09)):
+        assert np.corrcoef(shocks.ravel()[lag:], shocks.ravel()[:-lag])[0, 1] == pytest.approx(wish, abs=0.03)

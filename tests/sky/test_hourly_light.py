@@ -85,3 +85,19 @@ def test_hour_of_sunrise_counts_its_lit_part():
     rising = (SKY.lit > 0.0) & (SKY.lit < 1.0)
     # two hours a day, less those whose sun rises or sets within a part of the full hour
     assert 640 <= rising.sum() <= 730
+
+
+def test_a_low_winter_sun_keeps_the_beam_its_clearness_gives_it():
+    """Under a sun of 5 to 16 degrees the diffuse share is that of Erbs, as it is under a high one."""
+    low = (SKY.cosine > 0.09) & (SKY.cosine < 0.28) & (SKY.lit == 1.0)
+    assert low.sum() > 500
+    ghi = 0.75 * SKY.clear_w_m2
+    dni, dhi = beam_and_diffuse(ghi[None], SKY)
+    k = ghi[low] / (SKY.extra_w_m2[low] * SKY.cosine[low])
+    # Published: Erbs, Klein & Duffie, Solar Energy 28 (1982) 293, table 1, up to a clearness of 0.8.
+    middle = 0.9511 - 0.1604 * k + 4.388 * k**2 - 16.638 * k**3 + 12.336 * k**4
+    erbs = np.where(k <= 0.22, 1.0 - 0.09 * k, middle)
+    assert k.max() < 0.8
+    # 0.03: what the smooth form differs by from the pieces
+    assert dhi[0][low] / ghi[low] == pytest.approx(erbs, abs=0.03)
+    assert (dni[0][low] * SKY.cosine[low]).sum() / ghi[low].sum() > 0.1

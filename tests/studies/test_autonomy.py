@@ -9,6 +9,7 @@ import pytest
 
 from sunbot.storage import usable_wh
 from sunbot.studies.autonomy import autonomy_of, darkest_week_w
+from sunbot.studies.autonomy_sizing import size_by_autonomy
 from sunbot.studies.chain import Chain
 
 
@@ -101,3 +102,26 @@ def test_no_light_at_all_is_the_dark(robots):
     dark = Chain(replace(weather, table=weather.table.assign(ghi=0.0, dni=0.0, dhi=0.0)))
     found = autonomy_of(dark, robots.robot())
     assert found.darkest_week_worn_h == pytest.approx(found.dark_worn_h)
+
+
+def warmer_air(chain, kelvin):
+    table = chain.weather.table
+    return Chain(replace(chain.weather, table=table.assign(temp_air=table["temp_air"] + kelvin)))
+
+
+def test_a_box_warmer_than_the_air_is_a_box_in_warmer_air(chain, robots):
+    """What the cells feel decides: 12 K in the box or outside give the same hours, and more than none of it."""
+    robot = robots.robot()
+    boxed = robot.model_copy(update={"battery": robot.battery.model_copy(update={"box_rise_c": 12.0})})
+    found, outside = autonomy_of(chain, boxed), autonomy_of(warmer_air(chain, 12.0), robot)
+    assert found.dark_worn_h == pytest.approx(outside.dark_worn_h, rel=1e-9)
+    assert found.dark_worn_h > 1.01 * autonomy_of(chain, robot).dark_worn_h
+
+
+def test_the_arithmetic_counts_the_cold_in_the_box(chain, robots):
+    """The share of capacity left is that of the box: 12 K in it or outside size the same, smaller, battery."""
+    robot = robots.robot()
+    boxed = robot.model_copy(update={"battery": robot.battery.model_copy(update={"box_rise_c": 12.0})})
+    found_ah = size_by_autonomy(chain, boxed, taken=None).battery_ah
+    assert found_ah == pytest.approx(size_by_autonomy(warmer_air(chain, 12.0), robot, taken=None).battery_ah, rel=1e-9)
+    assert found_ah < 0.99 * size_by_autonomy(chain, robot, taken=None).battery_ah

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
 
 import pytest
@@ -131,3 +132,15 @@ def test_cautions_of_the_weather_are_passed_on(robots, chain):
 
     noted = replace(chain.weather, cautions=(Caution("one-year", "a file", "One year hides the bad ones."),))
     assert "one-year" in {caution.code for caution in standing_cautions(Chain(noted), robots.robot())}
+
+
+def test_a_regulator_is_held_to_the_voltage_of_a_pack_on_charge(chain, robots):
+    """Ten nickel cells on charge stand at 14 to 16 V; half an ampere from there to 5 V is 4.5 to 5.5 W of heat."""
+    # Common practice: 1.4 to 1.6 V a cell on charge.
+    robot = robots.robot(
+        battery={"chemistry": "nimh", "cells_in_series": 10, "capacity_ah": 12.0},
+        rail=[{"name": "logic", "kind": "linear", "volts": 5.0}],
+        load=[{"name": "computer", "rail": "logic", "amps": 0.5}],
+    )
+    told = codes(chain, robot)["regulator-heat"]
+    assert 4.5 < float(re.search(r"([\d.]+) W into heat", told)[1]) < 5.5

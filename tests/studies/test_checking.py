@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -231,3 +232,18 @@ def test_stages_are_kept_under_what_they_depend_on(robots, weather):
 def test_the_energy_year_starts_after_the_brightest_month(robots, weather):
     """In the northern summer the battery is surest full: the first month is no later than September."""
     assert Chain(weather).first_month(robots.robot()) in (7, 8, 9)
+
+
+def test_the_coarse_climate_tells_the_share_alive_in_dimmer_weather(robots):
+    """The share printed is the one of a check in weather 15 % dimmer, and not that of the robot as filed."""
+    filed = robots.robot(watts=32.0, load_w=0.5, battery_ah=10.0)
+    coarse = filed.site.model_copy(update={"climate": filed.site.climate.model_copy(update={"coarse": True})})
+    weather = robots.quick_weather(coarse, years=20)
+    answer = check(filed.model_copy(update={"site": coarse}), weather=weather, years=20)
+    (text,) = (caution.text for caution in answer.cautions if caution.code == "coarse-climate")
+    told = float(re.search(r"alive in (\d+)% of years", text)[1]) / 100.0
+    light = weather.table[["ghi", "dni", "dhi"]] * 0.85
+    dimmer = Chain(replace(weather, table=weather.table.assign(**light)))
+    # One year of twenty: cells in dimmer weather are cooler and work at less light, which the shortcut leaves out.
+    assert told == pytest.approx(verdict_on(dimmer.run(filed, keep="verdict"), filed.target).survival[0], abs=0.051)
+    assert told < answer.verdict.survival[0] - 0.1
