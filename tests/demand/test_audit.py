@@ -1,3 +1,5 @@
+"""What the audit of rails finds, and what it must not."""
+
 from __future__ import annotations
 
 import numpy as np

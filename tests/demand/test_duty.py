@@ -1,3 +1,5 @@
+"""When loads run: shares of a step, the order of serving, hours of the clock."""
+
 from __future__ import annotations
 
 import pandas as pd

@@ -1,3 +1,5 @@
+"""What loads ask for at the battery, against instants written out one by one."""
+
 from __future__ import annotations
 
 import numpy as np

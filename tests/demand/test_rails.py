@@ -1,3 +1,5 @@
+"""Rails one formula at a time: efficiencies, diodes, wires, sagging, margins."""
+
 from __future__ import annotations
 
 import numpy as np

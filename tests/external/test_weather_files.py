@@ -142,6 +142,7 @@ def test_east_and_west_walls_tell_that_stamps_are_at_their_middles(weathers, nam
 
 @pytest.mark.parametrize("name", PACKAGED)
 def test_the_audit_raises_no_false_alarm_on_packaged_years(name):
+    """Years that stand for sound ones pass every check of the audit."""
     site = _packaged(name)
     assert [check.text for check in audit_of(reading_for(site), site) if not check.passed] == []
 

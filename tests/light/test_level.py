@@ -28,6 +28,7 @@ def level(horizon: tuple[tuple[float, float], ...]) -> np.ndarray:
 
 
 def test_an_open_horizon_leaves_ghi():
+    """With no skyline given the light on the level is the ghi of the weather."""
     assert level(()) == pytest.approx(weather_for(SITE).table["ghi"].to_numpy())
 
 

@@ -42,6 +42,7 @@ def test_a_clear_year_agrees_with_the_reference_library_minute_by_minute(site_of
 
 
 def test_without_a_climate_the_air_is_assumed_and_said(site_of):
+    """The standard atmosphere at the height of the site stands in, with a caution."""
     weather = weather_for(site_of(source="clear-sky", file=None, climate=None))
     assert "assumed-air" in {caution.code for caution in weather.cautions}
     # Published: ISO 2533, 15 degC at sea level less 6.5 K/km: 11.49 degC at 540 m.

@@ -121,6 +121,7 @@ def test_air_from_the_climate_has_its_means_and_extremes(site_of):
 
 
 def test_no_light_at_all_is_refused(site_of, year, write_csv):
+    """A column of zeros is a dead sensor, not a dark year."""
     dark = year.assign(ghi=0.0, dni=0.0, dhi=0.0)
     with pytest.raises(InputError, match="ghi holds no light at all"):
         weather_for(site_of(file=write_csv(dark), label="start"))

@@ -74,6 +74,7 @@ def test_naive_stamps_without_a_clock_are_refused(site_of, year, write_csv):
 
 
 def test_a_label_is_required(site_of, year, write_csv):
+    """Which instant a stamp means is never guessed."""
     with pytest.raises(InputError, match=r"weather: label: it is missing"):
         weather_for(site_of(file=write_csv(year)))
 
@@ -119,6 +120,7 @@ def test_a_wrong_file_says_what_where_and_what_to_write(site_of, tmp_path, text,
 
 
 def test_a_file_that_is_not_utf8_is_refused(site_of, tmp_path):
+    """Bytes that are no text name the encoding that is asked for."""
     (tmp_path / "wrong.csv").write_bytes(TITLE.encode() + b"2020-01-01T00:00Z,\xff\xfe,1,1\n" * 4)
     with pytest.raises(InputError, match="not UTF-8"):
         weather_for(site_of(file="wrong.csv", label="start"))

@@ -184,6 +184,7 @@ def test_no_network_is_said_plainly(ask, monkeypatch):
 
 
 def test_a_spoilt_copy_says_to_delete_it(service, ask, tmp_path):
+    """A kept copy that cannot be read names the file and the remedy."""
     weather_for(ask(2011, 2011))
     kept = next(tmp_path.glob("nasa-power*.csv"))
     kept.write_text("time,ghi\nsoon,1\n")

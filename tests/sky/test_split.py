@@ -48,6 +48,7 @@ def test_each_column_follows_from_the_other_two(sun):
 
 
 def test_a_row_with_nothing_stays_missing(sun):
+    """From no light column none is made up."""
     none = np.full(8760, np.nan)
     for column in completed_light(none, none, none, sun)[:3]:
         assert np.isnan(column).all()

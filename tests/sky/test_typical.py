@@ -87,6 +87,7 @@ def test_a_clock_between_whole_hours(site_of, invented_record, epw_of):
 
 
 def test_a_typical_year_says_that_it_is_one(site_of, year, epw_of):
+    """One year whatever number is asked for, its file named, and a caution that one year hides the bad ones."""
     weather = weather_for(site_of(file=epw_of(year)), years=50)
     assert weather.kind == "typical"
     assert weather.n_years == 1
@@ -138,6 +139,7 @@ def test_fill_codes_and_short_gaps_are_filled_and_said(site_of, year, epw_of):
 
 
 def test_a_long_gap_in_a_typical_year_is_refused(site_of, year, epw_of):
+    """There is no other year to take: 100 h without light name the first of them."""
     holed = year.copy()
     holed.iloc[4000:4100, :3] = 9999
     with pytest.raises(InputError, match=r"year\.epw: ghi lacks \d+ h from 2001-06-16 .* only up to 3 h are filled"):
@@ -216,6 +218,7 @@ def test_a_broken_epw_says_what_and_where(site_of, year, epw_of, tmp_path, chang
     ],
 )
 def test_a_file_that_cannot_be_meant_is_refused(site_of, tmp_path, keys, message):
+    """A missing file, a folder, another kind, a path out of the package, another place: each says what is wrong."""
     (tmp_path / "notes.txt").write_text("nothing")
     with pytest.raises(InputError, match=message):
         weather_for(site_of(**keys))

@@ -36,6 +36,7 @@ def test_years_run_from_the_first_full_month_and_keep_the_leap_day(site_of, reco
 
 
 def test_the_last_years_are_taken(site_of, record, write_csv):
+    """Of three whole years two are asked for: the later ones, and no word of too few."""
     weather = weather_for(site_of(file=write_csv(record), label="start"), years=2)
     assert weather.times[0] == pd.Timestamp("2018-11-30T23:30Z")
     assert "fewer-years" not in _codes(weather)
@@ -54,6 +55,7 @@ def test_a_year_with_a_long_gap_is_dropped_with_a_word(site_of, record, write_cs
 
 
 def test_a_record_of_holes_is_refused(site_of, record, write_csv):
+    """A week without light in every June leaves no year to take."""
     holed = record.copy()
     holed.loc[(holed.index.month == 6) & (holed.index.day < 9), ["ghi", "dni", "dhi"]] = np.nan
     with pytest.raises(InputError, match="none of its whole years is free of long gaps"):

@@ -72,6 +72,7 @@ def test_a_day_that_a_year_does_not_have_is_jumped_over():
 
 
 def test_a_spell_longer_than_a_year_is_refused():
+    """Eleven days do not fit into ten."""
     with pytest.raises(ValueError, match="does not fit"):
         lowest_sums(np.ones((2, 10)), 11)
 
@@ -133,6 +134,7 @@ def test_return_period_counts_ranks():
 
 
 def test_no_level_past_twice_the_years_at_hand():
+    """Twenty years tell what comes once in 40, not in 41; four years tell nothing rare at all."""
     lows = np.linspace(5.0, 9.0, 20)
     low_interval(lows, 40.0, seed=1)
     with pytest.raises(ValueError, match="20 years do not tell what comes once in 41"):
@@ -164,6 +166,7 @@ def test_spells_carry_date_and_return_period():
 
 
 def test_one_year_tells_no_return_period():
+    """A single year has a darkest spell, but neither a return period nor an interval."""
     daily = synthetic_years(1, 2)
     dates = np.datetime64("2001-01-01") + np.arange(365)[None, :]
     (spell,) = dark_spells(daily, dates, lengths=(3,))

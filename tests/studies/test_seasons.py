@@ -80,6 +80,7 @@ def test_spells_are_the_lowest_of_the_daily_harvest(found):
 
 
 def test_the_fan_opens_upwards_and_starts_above_the_lowest(found):
+    """Quantiles of charge rise from column to column, and none lies below the lowest charge of its month."""
     fan = found.charge_fan.to_numpy()
     assert (np.diff(fan, axis=1) >= 0).all()
     assert (fan[:, 0] >= found.months["lowest_soc"].to_numpy() - 1e-12).all()
@@ -102,6 +103,7 @@ def test_the_worst_fortnight_is_the_one_with_the_least_charge(found):
 
 
 def test_sun_hours_are_those_of_the_field(found):
+    """On an open field nothing hides behind the horizon, and the robot is in its own way for a part of the day."""
     hours = sun_hours(found.sun)
     assert (hours["up_h_day"] > 8).all()
     assert not hours["behind_horizon_h_day"].any()

@@ -47,6 +47,7 @@ def test_no_mount_of_a_plain_grid_beats_it(robots):
 
 
 def test_a_roaming_robot_keeps_its_lean_and_gets_a_tilt(robots):
+    """No way to lean is better than another where it parks anywhere; its tilt is judged on the mean of headings."""
     robot = robots.robot(heading="roams")
     chain = Chain(robots.quick_weather(robot.site, years=1, every=3))
     mount = best_mount(chain, robot)
@@ -70,6 +71,7 @@ def test_ratios_are_harvest_over_demand_month_by_month(robots):
 
 
 def test_a_deployment_counts_its_own_months_only(robots):
+    """Out in May and June, it has ratios and harvest in those months and in no other."""
     robot = robots.robot(deployment={"from": "05-01", "to": "06-30"})
     chain = Chain(robots.quick_weather(robot.site, years=1))
     assert np.flatnonzero(~np.isnan(month_ratios(chain, robot))).tolist() == [4, 5]

@@ -122,6 +122,7 @@ def test_a_robot_that_dies_without_work_has_no_calendar(robots):
 
 
 def test_no_skippable_work_no_calendar(robots):
+    """A robot whose loads are all essential has none to plan."""
     robot = robots.robot()
     assert work_calendar(Chain(robots.quick_weather(robot.site, years=1)), robot) is None
 
