@@ -14,6 +14,8 @@ from .typical import read_epw, read_tmy2, read_tmy3
 PACKAGED = "pvlib-data:"
 LARGEST_BYTES = 1_000_000_000
 NEAR_DEG, NEAR_M = 0.3, 300.0
+"""A file from farther off (some 30 km), or as much higher (about 2 K colder), is of another place; ours."""
+
 _TMY3_TITLES = b"Date (MM/DD/YYYY)"
 
 

@@ -17,8 +17,9 @@ from .sun_height import SunHeight
 
 # Common practice: a thermopile under a clear night sky reads a few W/m2 below zero.
 LEAST_W_M2 = -20.0
-# Sound files have none, one whose clock is an hour off 0.2 to 0.4 % (measured on the files pvlib ships).
+# Ours. Sound files have none, one whose clock is an hour off 0.2 to 0.4 % (measured on the files pvlib ships).
 NIGHT_SHARE = 0.005
+# Common practice: two to three hours after noon.
 WARMEST_HOUR = 15.0
 
 

@@ -26,7 +26,7 @@ FILL_CODES = (-99.0, -99.9, -999.0, -9999.0, 99.9, 999.0, 9999.0, 99999.0, 32767
 _BELIEVABLE = {"temp_air": (-90.0, 60.0), "wind_speed": (-0.5, 75.0)}
 _NIGHT_OFFSET_W_M2 = -10.0
 _HEAVY = 0.005  # share of a column from which on what is wrong moves an answer
-_CLEAR_DAY = 0.75
+_CLEAR_DAY = 0.75  # clearness of a clear day at sea level. Published: Allen et al., FAO paper 56 (1998), eq. 37
 _UNITS = (
     ("kW/m2 or kWh/m2 in an hour", 1e-3, False),
     ("MJ/m2 in an hour", 3.6e-3, False),

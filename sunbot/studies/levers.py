@@ -20,6 +20,7 @@ SHARES = (-0.20, -0.10, 0.10, 0.20)
 
 DIRT_POINTS = (0.10, 0.20)
 COLDER_K = -10.0
+"""Dirt on top of the filed one, and a winter of the hard kind all year; ours, round."""
 
 _FACTORS = ("light", "load", "panel", "battery")
 

@@ -12,7 +12,7 @@ from ..storage import Balance
 from ..types import BoolArray, FloatArray, IntArray
 
 LOST_ABOVE_WH = 1e-3
-"""Unserved essential energy above which a year counts as lost."""
+"""Unserved essential energy above which a year counts as lost; ours: far above rounding, far below any load."""
 
 
 @dataclass(frozen=True, eq=False)
