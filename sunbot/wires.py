@@ -38,14 +38,3 @@ def resistance_ohm(length_m: float, area_mm2: float, *, temp_c: float = 20.0) ->
         raise ValueError(f"a wire of {length_m} m and {area_mm2} mm2 is none")
     per_km = CLASS_5_OHM_PER_KM.get(float(area_mm2), 1000.0 * COPPER_OHM_MM2_M / area_mm2)
     return 2.0 * length_m * per_km / 1000.0 * (1.0 + COPPER_PER_K * (temp_c - 20.0))
-
-
-def area_of_awg_mm2(gauge: float) -> float:
-    """Copper cross-section of an American wire gauge [mm²]; 0, -1, -2, -3 stand for 1/0 to 4/0.
-
-    Source
-    ------
-    Published: ASTM B258, d = 0.127 mm x 92^((36 - gauge)/39).
-    """
-    diameter_mm = 0.127 * 92.0 ** ((36.0 - gauge) / 39.0)
-    return float(3.141592653589793 / 4.0 * diameter_mm**2)

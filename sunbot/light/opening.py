@@ -106,7 +106,11 @@ def directions_through(opening: Opening, face: FloatArray, *, edges: Edges | Non
 
 
 def configuration_factor(opening: Opening, face: FloatArray) -> float:
-    """Share of the light that leaves a small plane, by the cosine law, that passes the opening."""
+    """Share of the light that leaves a small plane, by the cosine law, that passes the opening.
+
+    The check formula of this module: through the directions that all light through a window takes, it is held against
+    the closed forms of radiative transfer.
+    """
     seen = directions_through(opening, face)
     return float((seen.cos_at(face) * seen.solid_sr).sum() / np.pi)
 

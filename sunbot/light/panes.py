@@ -72,11 +72,3 @@ def panes_pass_at(cos_incidence: FloatArray, *, panes: int, thickness_mm: float,
     """`panes_pass` read from a table, within 0.00001: for many angles."""
     cosines, passed = _table(panes, thickness_mm, extinction_per_m)
     return np.interp(cos_incidence, cosines, passed)
-
-
-def hemispherical_pass(*, panes: int, thickness_mm: float, extinction_per_m: float) -> float:
-    """Share of light from all directions alike that passes; the integral of ``panes_pass`` over 2 cos(t) dcos(t)."""
-    nodes, weights = np.polynomial.legendre.leggauss(64)
-    cosines = (nodes + 1.0) / 2.0
-    passed = panes_pass(cosines, panes=panes, thickness_mm=thickness_mm, extinction_per_m=extinction_per_m)
-    return float(passed @ (weights * cosines))

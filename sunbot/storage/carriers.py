@@ -65,8 +65,7 @@ class Balance:
     """Outcome of the balance. Monthly arrays are (12, n_years, n_designs), calendar month January first.
 
     harvest_wh offered; spilled_wh refused; demand_wh asked; unserved_wh essential not served; skipped_wh, work_asked_wh
-    of skippable work; level_skipped_wh, level_asked_wh (12, n_levels, n_years, n_designs) the same by level;
-    hours_out; lowest_soc.
+    of skippable work; hours_out; lowest_soc.
     outages, longest_out_h, visits : (n_years, n_designs); an outage that runs over the seam counts where it began.
     first_out : (12, n_years, n_designs) step of the lane at which the month's first outage began, -1 = none.
     settled : (n_designs,) false where the ring still moved after 20 rounds (the worse of the last two is given).
@@ -81,8 +80,6 @@ class Balance:
     visits: FloatArray
     settled: BoolArray
     cannot_give: BoolArray
-    level_skipped_wh: FloatArray | None = None
-    level_asked_wh: FloatArray | None = None
     harvest_wh: FloatArray | None = None
     spilled_wh: FloatArray | None = None
     demand_wh: FloatArray | None = None

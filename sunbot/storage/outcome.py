@@ -107,7 +107,7 @@ class _Assembly:
             settled=settled,
             cannot_give=np.asarray((sums["failed"] > 0).any(axis=(0, 1))),
         )
-        return self._with_months(verdict, asked, skipped) if months else verdict
+        return self._with_months(verdict, asked) if months else verdict
 
     def _monthly(self, pieces: FloatArray) -> FloatArray:
         """Sum over the pieces of each calendar month: (12, ...)."""
@@ -130,7 +130,7 @@ class _Assembly:
         pieces = [slice(a, b) for a, b in itertools.pairwise(bounds)]
         return np.array([np.einsum("syc,sy->yc", power_w[rows[lanes.row[p]]], lanes.step_h[p]) for p in pieces])
 
-    def _with_months(self, verdict: Balance, asked: FloatArray, skipped: FloatArray) -> Balance:
+    def _with_months(self, verdict: Balance, asked: FloatArray) -> Balance:
         sums, designs = self.sheet.sums, self.designs
         hours = np.add.reduceat(self.source.lanes.step_h, self.firsts, axis=0)[..., None]
         essential = sums["essential_total"] * designs.essential_x + hours * designs.extra_w
@@ -147,8 +147,6 @@ class _Assembly:
             visits=verdict.visits,
             settled=verdict.settled,
             cannot_give=verdict.cannot_give,
-            level_skipped_wh=self._monthly(skipped),
-            level_asked_wh=self._monthly(asked),
             harvest_wh=self._monthly(sums["harvest"] * self.ah),
             spilled_wh=self._monthly(sums["spilled"] * self.ah),
             demand_wh=self._monthly(essential + asked.sum(axis=1)),

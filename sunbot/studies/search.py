@@ -58,18 +58,6 @@ def smallest(meets: Meets, low: FloatArray, high: FloatArray, *, rel: float = 0.
         grid[cases] = inner
 
 
-def largest(meets: Meets, low: FloatArray, high: FloatArray, *, rel: float = 0.01, width: int = 14) -> FloatArray:
-    """The largest candidate, to ``rel``, up to which every smaller one that was tried meets the target.
-
-    As `smallest`, mirrored: ``high`` where even that meets the target, NaN where ``low`` does not.
-    """
-
-    def mirrored(cases: IntArray, candidates: FloatArray) -> BoolArray:
-        return meets(cases, 1.0 / candidates)
-
-    return np.asarray(1.0 / smallest(mirrored, 1.0 / np.asarray(high), 1.0 / np.asarray(low), rel=rel, width=width))
-
-
 def _first_of_passing(met: BoolArray) -> IntArray:
     """From which candidate on all pass, by row; the number of candidates where the last one fails."""
     return np.asarray(met.shape[1] - np.cumprod(met[:, ::-1], axis=1).sum(axis=1), dtype=np.int64)

@@ -46,11 +46,6 @@ def tilted(robot: Robot, tilt_deg: float, azimuth_deg: float | None = None) -> R
     return robot.model_copy(update={"panels": panels})
 
 
-def best_tilt_deg(chain: Chain, robot: Robot, *, years: int) -> float:
-    """Tilt of the first panel that maximises the worst month's harvest over demand, looked for on a few years [deg]."""
-    return _Mounts(chain, robot, years=years).best_tilt(robot.panels[0].azimuth_deg)
-
-
 def best_mount(chain: Chain, robot: Robot, *, years: int = LOOK_YEARS) -> BestMount | None:
     """Tilt (and azimuth, if the heading is fixed) of the first panel with the best worst month, found on a few years.
 

@@ -52,13 +52,6 @@ class WorkCalendar:
     possible: bool
     confirmed: bool
 
-    @property
-    def tightest_month(self) -> int | None:
-        """The month with the least work of those in which the target binds."""
-        if not self.bound.any():
-            return None
-        return int(np.argmin(np.where(self.bound, self.factors, np.inf))) + 1
-
 
 def work_calendar(chain: Chain, robot: Robot) -> WorkCalendar | None:
     """Raise all months together until the target binds, fix the months that bind, go on with the rest.

@@ -1,8 +1,8 @@
-"""Wires: the flexible-cable table, gauges, warmth."""
+"""Wires: the flexible-cable table, other sizes, warmth."""
 
 import pytest
 
-from sunbot.wires import CLASS_5_OHM_PER_KM, area_of_awg_mm2, resistance_ohm
+from sunbot.wires import CLASS_5_OHM_PER_KM, resistance_ohm
 
 
 @pytest.mark.parametrize(("area_mm2", "ohm_per_km"), sorted(CLASS_5_OHM_PER_KM.items()))
@@ -31,9 +31,3 @@ def test_impossible_wires_are_a_callers_mistake(length_m, area_mm2):
     """Negative lengths, no copper and NaN are refused."""
     with pytest.raises(ValueError, match="is none"):
         resistance_ohm(length_m, area_mm2)
-
-
-def test_thinner_gauges_have_less_copper():
-    """Six gauges halve the diameter, to the two digits of that rule of thumb."""
-    # Common practice: six gauge steps double the diameter.
-    assert area_of_awg_mm2(12) / area_of_awg_mm2(18) == pytest.approx(4.0, rel=0.03)

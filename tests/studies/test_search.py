@@ -1,9 +1,9 @@
-"""The one search behind every smallest and largest."""
+"""The one search behind every "smallest that does"."""
 
 import numpy as np
 import pytest
 
-from sunbot.studies.search import largest, smallest
+from sunbot.studies.search import smallest
 
 
 def over(thresholds, tried=None):
@@ -42,19 +42,6 @@ def test_two_rounds_are_enough_for_one_per_cent_of_a_fivefold_range():
     smallest(over(np.linspace(1.1, 4.9, 12), tried), np.full(12, 1.0), np.full(12, 5.0), rel=0.01, width=16)
     assert len(tried) == 2
     assert sum(tried) < 12 * 40
-
-
-def test_the_largest_is_the_mirror():
-    """Up to the threshold every candidate does."""
-    limit = np.array([2.5, 30.0, 0.5, 100.0])
-
-    def meets(cases, grid):
-        return grid <= limit[cases][:, None]
-
-    found = largest(meets, np.full(4, 1.0), np.full(4, 50.0), rel=0.01)
-    assert found[:2] == pytest.approx(limit[:2], rel=0.0105)
-    assert np.isnan(found[2])
-    assert found[3] == pytest.approx(50.0)
 
 
 def test_an_island_of_success_below_a_failure_is_not_taken():

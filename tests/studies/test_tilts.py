@@ -8,7 +8,6 @@ from sunbot.sky import weather_for
 from sunbot.studies.chain import Chain
 from sunbot.studies.tilts import (
     best_mount,
-    best_tilt_deg,
     few_years,
     month_harvest_wh,
     month_ratios,
@@ -55,7 +54,8 @@ def test_a_roaming_robot_keeps_its_lean_and_gets_a_tilt(robots):
     # Parked anywhere: what counts is the mean of all headings.
     mean = robot.model_copy(update={"parked": "mean"})
     assert mount.worst_ratio == worst_ratio(chain, tilted(mean, mount.tilt_deg))
-    assert best_tilt_deg(chain, robot, years=1) == mount.tilt_deg
+    tried = [worst_ratio(chain, tilted(mean, tilt)) for tilt in range(0, 91, 15)]
+    assert mount.worst_ratio >= 0.99 * max(tried)
 
 
 def test_ratios_are_harvest_over_demand_month_by_month(robots):
