@@ -142,7 +142,8 @@ def _array(number: int, panel: Panel, robot: Robot) -> Array:
     """One entry of the file."""
     where = panel_where(number, panel)
     sheet = sheet_of(panel, nominal_v=nominal_string_v(robot) / panel.in_series)
-    cell = _fitted(panel, sheet, where=where).wired(panel.in_series, panel.in_parallel)
+    cell = _shunted(_fitted(panel, sheet, where=where), panel, sheet, where=where)
+    cell = cell.wired(panel.in_series, panel.in_parallel)
     safe_voc_v = COLD_VOC_OVER_VMP * sheet.vmp_v if "voc_v" in sheet.assumed else sheet.voc_v
     array = Array(
         where=where,
@@ -161,7 +162,7 @@ def _array(number: int, panel: Panel, robot: Robot) -> Array:
 def _fitted(panel: Panel, sheet: Sheet, *, where: str) -> OneDiode:
     """Single-diode parameters of one panel; a data sheet no cell can have is the user's mistake."""
     try:
-        cell = fit_one_diode(
+        return fit_one_diode(
             watts=panel.watts,
             vmp_v=sheet.vmp_v,
             imp_a=sheet.imp_a,
@@ -182,6 +183,10 @@ def _fitted(panel: Panel, sheet: Sheet, *, where: str) -> OneDiode:
                 "vmp_v, isc_a 1.04 to 1.12 times imp_a, voc_pct_per_k -0.25 to -0.40",
             )
         ) from None
+
+
+def _shunted(cell: OneDiode, panel: Panel, sheet: Sheet, *, where: str) -> OneDiode:
+    """The cell with the shunt that the file gives for one panel, if it does."""
     if panel.shunt_ohm is None:
         return cell
     try:
