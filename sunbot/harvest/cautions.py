@@ -133,9 +133,11 @@ def _of_dim_light(lights: Sequence[Light], arrays: Sequence[Array], out: BoolArr
         cells_w_m2 = light.cells_w_m2[out]
         weight = np.ones((1, 1)) if cells_w_m2.shape[1] != light.weight.shape[1] else light.weight
         weight = weight if len(weight) == 1 else weight[out]
-        total += array.watts * float(np.einsum("th,th->", cells_w_m2, np.broadcast_to(weight, cells_w_m2.shape)))
+        weight = np.broadcast_to(weight, cells_w_m2.shape)
         at_dim = np.where(cells_w_m2 < DIM_W_M2, cells_w_m2, 0.0)
-        dim += array.watts * float(np.einsum("th,th->", at_dim, np.broadcast_to(weight, cells_w_m2.shape)))
+        # summed by step first: the tables may be in single precision
+        total += array.watts * float(np.einsum("th,th->t", cells_w_m2, weight).sum(dtype=np.float64))
+        dim += array.watts * float(np.einsum("th,th->t", at_dim, weight).sum(dtype=np.float64))
     if dim > 0.5 * total:
         yield Caution(
             "dim-light",
