@@ -9,7 +9,9 @@ import numpy as np
 from ..demand import rail_cautions
 from ..harvest import supply_cautions
 from ..inputs.robot import Robot
+from ..inputs.site import Site
 from ..light import ground_cautions, window_cautions
+from ..sky import Weather
 from ..storage import Balance, Pack, box_temp_c, resistance_ohm
 from ..types import Caution, FloatArray
 from .chain import Chain
@@ -21,6 +23,9 @@ BLOCKED_NOTED = 0.01
 
 CHARGING_OVER_REST = 1.08
 """Common practice: a pack on charge stands at most so much above its rest voltage when full."""
+
+MOST_YEARS = 500
+"""As many weather years can be asked for."""
 
 SAFETY = {
     "lithium": "Lithium cells need a protection circuit, a fuse at the pack, and no charging below freezing: charging "
@@ -57,36 +62,53 @@ def check_cautions(
 
     ``survival_coarse`` : share alive with 0.15 less light, told where the climate is read off the world table.
     """
-    coarse = robot.site.climate is not None and robot.site.climate.coarse and chain.weather.kind == "generated"
+    several = chain.weather.kind in ("generated", "record")
     return (
-        *_outcome(robot, balance, verdict),
-        *([_coarse_climate(survival_coarse)] if coarse else []),
+        *(_outcome(robot, balance, verdict) if several else _of_the_pack(balance)),
+        *coarse_climate(robot.site, chain.weather, survival=survival_coarse),
         *standing_cautions(chain, robot),
     )
 
 
-def _coarse_climate(survival: float) -> Caution:
-    return Caution(
+def coarse_climate(site: Site, weather: Weather, *, survival: float | None = None) -> Iterator[Caution]:
+    """That the light is read off the table of the world; ``survival`` : share alive with 0.15 less light."""
+    if site.climate is None or not site.climate.coarse or weather.kind != "generated":
+        return
+    with_less = "" if survival is None else f" With 15 % less light the robot is alive in {survival:.0%} of years."
+    yield Caution(
         "coarse-climate",
         "climate",
         "The light is read off a coarse table of the world: most months lie within 15 %, coasts and mountains further "
-        f"off. With 15 % less light the robot is alive in {survival:.0%} of years. Take a record of the place before "
-        "you decide.",
+        f"off.{with_less} Take a record of the place before you decide.",
     )
 
 
+def few_years(survived: int, years: int, *, robot: Robot) -> Iterator[Caution]:
+    """Whether as many years leave it open that the target is met, and how many would not."""
+    target = robot.target.survival
+    low, _ = wilson_interval(survived, years)
+    if low >= target:
+        return
+    noun = "years" if robot.deployment is None else "deployments"
+    one = "1 year leaves" if years == 1 else f"{years} {noun} leave"
+    enough = years_to_settle(target, survived / years)
+    if survived == years:
+        more = "" if enough is None else f"; {enough} without a failure would settle {target:.0%} (--years {enough})"
+    elif enough is None:
+        more = f"; at that share of failures no number of years settles {target:.0%}"
+    else:
+        more = f"; if failures stay as rare, about {enough} would settle {target:.0%}"
+        more += f" (--years {enough})" if enough <= MOST_YEARS else ", more than can be run"
+    yield Caution("few-years", "survival", f"{one} room for a true share of {low:.0%}{more}.")
+
+
 def _outcome(robot: Robot, balance: Balance, verdict: Verdict) -> Iterator[Caution]:
-    years, survived, target = verdict.years, int(verdict.years_survived[0]), robot.target.survival
-    if years > 1 and verdict.survival_met[0]:
-        low, _ = wilson_interval(survived, years)
-        enough = years_to_settle(target)
-        if low < target and enough is not None:
-            yield Caution(
-                "few-years",
-                "survival",
-                f"{years} years leave room for a true share of {low:.0%}; {enough} years without a failure would "
-                f"settle {target:.0%} (--years {enough}).",
-            )
+    if verdict.survival_met[0]:
+        yield from few_years(int(verdict.years_survived[0]), verdict.years, robot=robot)
+    yield from _of_the_pack(balance)
+
+
+def _of_the_pack(balance: Balance) -> Iterator[Caution]:
     if balance.cannot_give[0]:
         yield Caution(
             "pack-too-weak",
