@@ -12,9 +12,10 @@ from ..inputs.robot import Robot
 from ..inputs.site import Site
 from ..light import ground_cautions, window_cautions
 from ..sky import Weather
-from ..storage import Balance, Pack, box_temp_c, resistance_ohm
+from ..storage import Balance, Pack, resistance_ohm
 from ..types import Caution, FloatArray
 from .chain import Chain
+from .heating import box_of, heater_cautions, two_digits
 from .statistics import wilson_interval, years_to_settle
 from .verdict import Verdict
 
@@ -128,8 +129,6 @@ def _of_the_pack(balance: Balance) -> Iterator[Caution]:
 def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: int) -> Iterator[Caution]:
     """Whether the box gets colder or hotter than the cells are made to work in; the balance does not cut them off."""
     kind = pack.kind
-    if pack.heater_w > 0:
-        box_c = np.maximum(box_c, pack.heater_on_below_c)
     for code, beyond, bounds in (
         ("battery-too-cold", box_c < kind.work_min_c, f"below {kind.work_min_c:g} degC, down to {box_c.min():.0f},"),
         ("battery-too-hot", box_c > kind.work_max_c, f"above {kind.work_max_c:g} degC, up to {box_c.max():.0f},"),
@@ -138,8 +137,9 @@ def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: i
             yield Caution(
                 code,
                 "battery",
-                f"The box is {bounds} for {beyond.sum() * step_h / years:.2g} h a year. Such cells are not made to "
-                "work there: they may fail, or their protection may cut the robot off, and the answer counts neither.",
+                f"The box is {bounds} for {two_digits(beyond.sum() * step_h / years)} h a year. Such cells are not "
+                "made to work there: they may fail, or their protection may cut the robot off, and the answer counts "
+                "neither.",
             )
 
 
@@ -167,18 +167,15 @@ def _while_out(chain: Chain, robot: Robot, values: FloatArray) -> FloatArray:
 def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
     battery, weather = robot.battery, chain.weather_at(robot)
     pack = chain.pack(robot)
-    box_c = box_temp_c(
-        weather.table["temp_air"].to_numpy(), step_h=weather.step_h, lag_h=pack.box_lag_h, rise_c=pack.box_rise_c
-    )
-    box_c, offer_w = (_while_out(chain, robot, values) for values in (box_c, chain.offer_w(robot)))
+    box = box_of(chain, robot)
+    cold_c, box_c, offer_w = (_while_out(chain, robot, x) for x in (box.box_c, box.warm_c, chain.offer_w(robot)))
     offered = float(offer_w.sum())
     for code, blocked, limit_c, word in (
         ("frost", box_c < pack.charge_min_c, pack.charge_min_c, "below"),
         ("heat", box_c > pack.charge_max_c, pack.charge_max_c, "above"),
     ):
         share = float(offer_w[blocked].sum()) / offered if offered > 0 else 0.0
-        heated = code == "frost" and battery.heater_w > 0 and battery.heater_on_below_c >= pack.charge_min_c
-        if share > BLOCKED_NOTED and not heated:
+        if share > BLOCKED_NOTED:
             yield Caution(
                 code,
                 "battery",
@@ -186,6 +183,7 @@ def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
                 "must not be charged; it can then only feed the loads. "
                 + ("Think of box_rise_c, heater_w or another chemistry." if code == "frost" else "Shade the box."),
             )
+    yield from heater_cautions(battery, cold_c, box_c, step_h=weather.step_h, years=weather.n_years)
     yield from _beyond_its_window(pack, box_c, step_h=weather.step_h, years=weather.n_years)
     thresholds = any(load.skip_below_soc is not None for load in robot.loads)
     if battery.chemistry == "lifepo4" and thresholds:

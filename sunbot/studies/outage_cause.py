@@ -8,9 +8,10 @@ import numpy as np
 
 from ..calendar import Lanes
 from ..inputs.robot import Robot
-from ..storage import Balance, box_temp_c, usable_share
+from ..storage import Balance, usable_share
 from ..types import FloatArray
 from .chain import Chain
+from .heating import box_of
 
 BEFORE_H = 120.0
 """How long before an outage its harvest is looked at; common practice."""
@@ -37,13 +38,10 @@ def outage_cause(chain: Chain, robot: Robot, balance: Balance, lanes: Lanes) -> 
     month, year = np.nonzero(began >= 0)
     if not year.size:
         return None
-    pack, weather = chain.pack(robot), chain.weather_at(robot)
-    box_c = box_temp_c(
-        weather.table["temp_air"].to_numpy(), step_h=weather.step_h, lag_h=pack.box_lag_h, rise_c=pack.box_rise_c
-    )
+    pack, step_h, box_c = chain.pack(robot), chain.weather.step_h, box_of(chain, robot).warm_c
     step, offer_w = began[month, year], chain.offer_w(robot)
     blocked = total = 0.0
-    for back in range(round(BEFORE_H / weather.step_h)):
+    for back in range(round(BEFORE_H / step_h)):
         at = np.maximum(step - back, 0)
         rows = lanes.row[at, year][(step >= back) & (lanes.step_h[at, year] > 0)]
         total += float(offer_w[rows].sum())
