@@ -13,6 +13,7 @@ from ..light import ground_cautions, window_cautions
 from ..storage import Balance, Pack, box_temp_c, resistance_ohm
 from ..types import Caution, FloatArray
 from .chain import Chain
+from .pack_cautions import pack_cautions
 from .statistics import wilson_interval, years_to_settle
 from .verdict import Verdict
 
@@ -32,14 +33,19 @@ SAFETY = {
 SAFETY_TAIL = " Local codes and licensed practice go first."
 
 
-def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
-    """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery."""
+def standing_cautions(chain: Chain, robot: Robot, *, sized: Robot | None = None) -> tuple[Caution, ...]:
+    """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery.
+
+    sized : the robot with panels and battery of another size, for what goes by the size of the pack.
+    """
+    sized = robot if sized is None else sized
     return (
         *chain.weather.cautions,
         *ground_cautions(robot),
         *window_cautions(robot, chain.lights(robot)),
         *supply_cautions(robot, chain.weather_at(robot), lights=chain.lights(robot), supply=chain.supply(robot)),
-        *_rails(chain, robot),
+        *_rails(chain, sized),
+        *pack_cautions(chain, sized, filed=robot),
         *_battery(chain, robot),
     )
 
@@ -52,10 +58,13 @@ def check_cautions(
     ``survival_coarse`` : share alive with 0.15 less light, told where the climate is read off the world table.
     """
     coarse = robot.site.climate is not None and robot.site.climate.coarse and chain.weather.kind == "generated"
+    outcome = _outcome(robot, balance, verdict)
+    standing = standing_cautions(chain, robot)
+    told = {caution.code for caution in standing}  # with more figures than the outcome has
     return (
-        *_outcome(robot, balance, verdict),
+        *(caution for caution in outcome if caution.code not in told),
         *([_coarse_climate(survival_coarse)] if coarse else []),
-        *standing_cautions(chain, robot),
+        *standing,
     )
 
 

@@ -234,7 +234,8 @@ def _survival_map(frontier: Frontier, pairs: tuple[Pair, ...]) -> SurvivalMap | 
 
 
 def _cautions(chain: Chain, robot: Robot, taken: Recommended | None) -> tuple[Caution, ...]:
-    found = list(standing_cautions(chain, robot))
+    sized = None if taken is None else resized(robot, watts=taken.watts, battery_ah=taken.battery_ah)
+    found = list(standing_cautions(chain, robot, sized=sized))
     limit_a = robot.controller.max_charge_a
     full_v = chain.pack(robot).curve.rest_v[-1]
     if taken is not None and limit_a is not None and taken.watts * 0.9 > limit_a * full_v:
