@@ -91,8 +91,8 @@ def _charge_rate(chain: Chain, robot: Robot, filed: Robot, box_c: FloatArray, ou
         "charge-rate",
         "controller",
         f"The panels can push {pushed_a:.3g} A into the battery {when}; its cells take {limit_a:.3g} A "
-        f"({rate_c:g} x {battery.capacity_ah:.3g} Ah{in_cold}), and nothing given holds it there. The answer counts only what "
-        f"they may take; real cells would be damaged. {remedy}, or take a battery of "
+        f"({rate_c:g} x {battery.capacity_ah:.3g} Ah{in_cold}), and nothing given holds it there. The answer counts "
+        f"only what they may take; real cells would be damaged. {remedy}, or take a battery of "
         f"{_rounded(pushed_a / rate_c, ceil)} Ah.",
     )
 
