@@ -16,6 +16,7 @@ from ..storage import Balance, Pack, resistance_ohm
 from ..types import Caution, FloatArray
 from .chain import Chain
 from .heating import box_of, heater_cautions, two_digits
+from .pack_cautions import pack_cautions
 from .statistics import wilson_interval, years_to_settle
 from .verdict import Verdict
 
@@ -38,8 +39,12 @@ SAFETY = {
 SAFETY_TAIL = " Local codes and licensed practice go first."
 
 
-def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
-    """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery."""
+def standing_cautions(chain: Chain, robot: Robot, *, sized: Robot | None = None) -> tuple[Caution, ...]:
+    """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery.
+
+    sized : the robot with panels and battery of another size, for what goes by the size of the pack.
+    """
+    sized = robot if sized is None else sized
     return (
         *chain.weather.cautions,
         *ground_cautions(robot),
@@ -51,7 +56,8 @@ def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
             supply=chain.supply(robot),
             within=chain.out(robot),
         ),
-        *_rails(chain, robot),
+        *_rails(chain, sized),
+        *pack_cautions(chain, sized, filed=robot),
         *_battery(chain, robot),
     )
 
@@ -64,10 +70,13 @@ def check_cautions(
     ``survival_coarse`` : share alive with 0.15 less light, told where the climate is read off the world table.
     """
     several = chain.weather.kind in ("generated", "record")
+    outcome = _outcome(robot, balance, verdict) if several else _of_the_pack(balance)
+    standing = standing_cautions(chain, robot)
+    told = {caution.code for caution in standing}  # with more figures than the outcome has
     return (
-        *(_outcome(robot, balance, verdict) if several else _of_the_pack(balance)),
+        *(caution for caution in outcome if caution.code not in told),
         *coarse_climate(robot.site, chain.weather, survival=survival_coarse),
-        *standing_cautions(chain, robot),
+        *standing,
     )
 
 

@@ -234,18 +234,18 @@ def _survival_map(frontier: Frontier, pairs: tuple[Pair, ...]) -> SurvivalMap | 
     return SurvivalMap(watts=frontier.sizes, battery_ah=ah, survival=survival.reshape(watts_at.shape))
 
 
-def _survival_dimmed(chain: Chain, robot: Robot, taken: Recommended | None) -> float | None:
+def _survival_dimmed(chain: Chain, robot: Robot, sized: Robot | None) -> float | None:
     """Share of years the pair taken survives with 0.15 less light; None where nothing asks for it."""
     coarse = robot.site.climate is not None and robot.site.climate.coarse
-    if taken is None or not coarse or chain.weather.kind != "generated":
+    if sized is None or not coarse or chain.weather.kind != "generated":
         return None
-    _, dimmed = filed_and_dimmed(chain, resized(robot, watts=taken.watts, battery_ah=taken.battery_ah))
-    return float(dimmed[1])
+    return float(filed_and_dimmed(chain, sized)[1][1])
 
 
 def _cautions(chain: Chain, robot: Robot, taken: Recommended | None) -> tuple[Caution, ...]:
-    found = list(standing_cautions(chain, robot))
-    found += coarse_climate(robot.site, chain.weather, survival=_survival_dimmed(chain, robot, taken))
+    sized = None if taken is None else resized(robot, watts=taken.watts, battery_ah=taken.battery_ah)
+    found = list(standing_cautions(chain, robot, sized=sized))
+    found += coarse_climate(robot.site, chain.weather, survival=_survival_dimmed(chain, robot, sized))
     if taken is not None and chain.weather.kind in ("generated", "record"):
         found += few_years(round(taken.survival * chain.weather.n_years), chain.weather.n_years, robot=robot)
     limit_a = robot.controller.max_charge_a
