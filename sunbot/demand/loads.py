@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 import pandas as pd
 
@@ -33,17 +35,26 @@ def demand(robot: Robot, times: pd.DatetimeIndex, *, battery_v: FloatArray, refe
     draw; each skippable load is a level of its own, and pays for the wire loss it adds to that of the loads served
     before it. Raises ``InputError`` where a diode takes the whole battery voltage.
     """
+    shares = [running_share(load, times, site=robot.site, reference=reference) for load in robot.loads]
+    return demand_of(robot, shares, battery_v=battery_v)
+
+
+def demand_of(robot: Robot, shares: Sequence[FloatArray], *, battery_v: FloatArray) -> Demand:
+    """What the loads ask for at the battery where each works a known share of the time.
+
+    shares : one (n_rows,) per load, 0 to 1. The rest as in `demand`.
+    """
     battery_v = np.atleast_1d(np.asarray(battery_v, dtype=np.float64))
     essential, levels = serving_order(robot.loads)
-    shares = [running_share(load, times, site=robot.site, reference=reference) for load in robot.loads]
-    base = np.zeros((4, len(times), battery_v.size))
-    work = np.zeros((4, len(times), len(levels), battery_v.size))
+    n_rows = len(shares[0])
+    base = np.zeros((4, n_rows, battery_v.size))
+    work = np.zeros((4, n_rows, len(levels), battery_v.size))
     for rail in robot.rails:
         supply = _Feed(rail, battery_v)
         fed = [place for place in essential + levels if robot.loads[place].rail == rail.name]
         idle_w = sum(robot.loads[place].idle_watts for place in fed)
         base += supply.idle()
-        base[[3, 1, 2]] += supply.add(np.full_like(battery_v, idle_w), np.ones(len(times)))
+        base[[3, 1, 2]] += supply.add(np.full_like(battery_v, idle_w), np.ones(n_rows))
         for place in fed:
             load = robot.loads[place]
             watts = _work_w(load, supply.volts)

@@ -2,6 +2,15 @@
 
 from .carriers import HarvestYield, Supply
 from .cautions import supply_cautions
+from .strongest import strongest_charge_a
 from .supplying import follows_battery, harvest_yield, supply
 
-__all__ = ["HarvestYield", "Supply", "follows_battery", "harvest_yield", "supply", "supply_cautions"]
+__all__ = [
+    "HarvestYield",
+    "Supply",
+    "follows_battery",
+    "harvest_yield",
+    "strongest_charge_a",
+    "supply",
+    "supply_cautions",
+]

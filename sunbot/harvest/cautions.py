@@ -11,11 +11,16 @@ from ..light.carriers import Light
 from ..sky.weather import Weather
 from ..types import BoolArray, Caution
 from .carriers import Supply
+from .cells import STC_C, STC_W_M2, current_a
 from .controller import cold_voc_v
 from .panels import Array, above_battery_v, arrays_of, battery_v
 
 WIRE_DROP_NOTED = 0.03
 """Share of the panel's voltage lost in its wire at full sun. Common practice."""
+
+SPARE_VOLTS_X = 1.6
+"""Voltage of a string over that of the full battery from where coupling them directly wastes much. Common practice: the
+36 cells made for it stand at 1.3 to 1.4 times."""
 
 DIM_W_M2 = 50.0
 """Below it the efficiency of cells differs from maker to maker and is seldom on a data sheet. Common practice."""
@@ -52,7 +57,7 @@ def supply_cautions(
     arrays = arrays_of(robot)
     out = slice(None) if within is None else within
     coldest_c = float(weather.table["temp_air"].to_numpy()[out].min())
-    found = [caution for array in arrays for caution in _of_panel(array, robot)]
+    found = [caution for array in arrays for caution in (*_of_panel(array, robot), *_of_spare_volts(array, robot))]
     found.extend(_of_controller(robot, arrays, coldest_c=coldest_c))
     if lights:
         found.extend(_of_dim_light(lights, arrays, out))
@@ -96,6 +101,23 @@ def _of_panel(array: Array, robot: Robot) -> Iterator[Caution]:
         )
 
 
+def _of_spare_volts(array: Array, robot: Robot) -> Iterator[Caution]:
+    """A string that a controller without a converter drags far down to the battery's voltage."""
+    held_v = battery_v(robot, 1.0) + above_battery_v(robot)
+    if robot.controller.kind == "mppt" or array.vmp_v <= SPARE_VOLTS_X * battery_v(robot, 1.0):
+        return
+    sun, temp_c = np.array([STC_W_M2]), np.array([STC_C])
+    kept_w = held_v * float(current_a(array.cell, sun, temp_c, volts=held_v, extra_ohm=array.wire_ohm)[0])
+    parallel = "wire them in parallel" if array.panel.in_series > 1 else "take a panel of fewer volts"
+    yield Caution(
+        "spare-volts",
+        f"panel {array.panel.name}",
+        f"Its string gives most at {array.vmp_v:.1f} V, a controller of kind {robot.controller.kind} holds it at the "
+        f"{held_v:.1f} V of the battery: about {100 * (1 - kept_w / array.watts):.0f} % of its power is lost; "
+        f"{parallel}, or take mppt.",
+    )
+
+
 def _of_controller(robot: Robot, arrays: Sequence[Array], *, coldest_c: float) -> Iterator[Caution]:
     """Limits of the controller."""
     controller = robot.controller
@@ -133,9 +155,11 @@ def _of_dim_light(lights: Sequence[Light], arrays: Sequence[Array], out: BoolArr
         cells_w_m2 = light.cells_w_m2[out]
         weight = np.ones((1, 1)) if cells_w_m2.shape[1] != light.weight.shape[1] else light.weight
         weight = weight if len(weight) == 1 else weight[out]
-        total += array.watts * float(np.einsum("th,th->", cells_w_m2, np.broadcast_to(weight, cells_w_m2.shape)))
+        weight = np.broadcast_to(weight, cells_w_m2.shape)
         at_dim = np.where(cells_w_m2 < DIM_W_M2, cells_w_m2, 0.0)
-        dim += array.watts * float(np.einsum("th,th->", at_dim, np.broadcast_to(weight, cells_w_m2.shape)))
+        # summed by step first: the tables may be in single precision
+        total += array.watts * float(np.einsum("th,th->t", cells_w_m2, weight).sum(dtype=np.float64))
+        dim += array.watts * float(np.einsum("th,th->t", at_dim, weight).sum(dtype=np.float64))
     if dim > 0.5 * total:
         yield Caution(
             "dim-light",

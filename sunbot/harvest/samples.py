@@ -83,7 +83,8 @@ def samples(lights: Sequence[Light], weather: Weather, arrays: Sequence[Array], 
 
 def _at(values: FloatArray, row: IntArray, heading: IntArray) -> FloatArray:
     """Values (n_steps, 1 or n_headings) of the samples."""
-    return values[row, 0] if values.shape[1] == 1 else values[row, heading]
+    found = values[row, 0] if values.shape[1] == 1 else values[row, heading]
+    return found.astype(np.float64, copy=False)
 
 
 def all_samples(lights: Sequence[Light], weather: Weather, arrays: Sequence[Array]) -> Iterator[Samples]:

@@ -198,6 +198,14 @@ class Battery(Part):
     box_lag_h: Number = key(2.0, "thermal lag of the box", unit="h", ge=0, le=240, mark="common practice", example=2)
     heater_w: Number = key(0.0, "heater that holds the box above heater_on_below_c", unit="W", ge=0, le=1e4, example=3)
     heater_on_below_c: Number = key(1.0, "box temperature the heater holds", unit="degC", ge=-60, le=60, example=1)
+    box_loss_w_per_k: Number | None = key(
+        None,
+        "what the box loses per kelvin above the air; left out, any heater holds",
+        unit="W/K",
+        gt=0,
+        le=1e4,
+        example=0.2,
+    )
     worn_capacity: Number = key(
         0.8, "share of capacity left when the battery is judged", gt=0, le=1, mark="common practice", example=0.8
     )

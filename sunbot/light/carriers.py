@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -23,6 +24,14 @@ class Sun:
     lit: FloatArray
     extra_w_m2: FloatArray
     airmass: FloatArray
+
+
+def number_kind(n_headings: int) -> type[np.floating[Any]]:
+    """Of tables by step and heading: with many headings in single precision, which halves the largest arrays of a run.
+
+    Its error of 6e-8 of a value lies far below that of any model here.
+    """
+    return np.float64 if n_headings == 1 else np.float32
 
 
 @dataclass(frozen=True, eq=False)

@@ -10,7 +10,7 @@ from ..calendar import Clock, duty_share, local_clock, standard_clock
 from ..inputs.robot import Panel, Robot
 from ..sky.weather import Weather
 from ..types import FloatArray, IntArray
-from .carriers import Sun
+from .carriers import Sun, number_kind
 from .hours import share_between
 from .view import Run
 
@@ -59,7 +59,7 @@ def heading_weight(
         return by_row[weather.row] if len(by_row) > 1 else by_row
     roaming = shares["roams"]
     parked = _parked_share(robot, weather, roaming)
-    by_row = np.zeros((len(parked), n_headings))
+    by_row = np.zeros((len(parked), n_headings), dtype=number_kind(n_headings))
     by_row[:, :N_HEADINGS] = ((roaming - parked) / N_HEADINGS)[:, None]
     for column, nose_deg in enumerate(axis.fixed_deg, start=N_HEADINGS):
         by_row[:, column] = shares[nose_deg]

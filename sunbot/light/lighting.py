@@ -14,7 +14,7 @@ from ..sky.weather import Weather
 from ..types import BoolArray, FloatArray, IntArray
 from .along import horizons_along
 from .behind_glass import behind_glass
-from .carriers import Light, LightYield, Sun
+from .carriers import Light, LightYield, Sun, number_kind
 from .glass import dirt_pass, snow_pass
 from .headings import heading_matters, heading_weight, noses
 from .hours import tilt_shares
@@ -153,12 +153,12 @@ def _clean(panel: Panel, weather: Weather, month: IntArray) -> FloatArray:
 def _filled(sky: SkyParts, factors: Factors, runs: list[Run], *, times: FloatArray | None = None) -> FloatArray:
     """Light through the factors, (n_times, n_headings), times a share of each step."""
     n_headings = max(part.shape[1] for part in vars(factors).values())
-    light = np.empty((len(sky.direct), n_headings))
+    light = np.empty((len(sky.direct), n_headings), dtype=number_kind(n_headings))
     for run, block in light_through(sky, factors, runs):
         if times is None:
             light[run.times] = block
         else:
-            np.multiply(block, times[run.times, None], out=light[run.times])
+            light[run.times] = block * times[run.times, None]
     return light
 
 

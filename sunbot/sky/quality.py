@@ -26,6 +26,9 @@ from .record import record_of
 
 __all__ = ["SHORT_GAP_H", "AuditCheck", "audit_record", "merged"]
 
+AUDITED = "audit-"
+"""Before the code of a check in the caution that an answer on the record carries."""
+
 _ROWS_AT_ONCE = 600_000
 
 

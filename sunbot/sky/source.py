@@ -16,7 +16,7 @@ from .digest import table_digest
 from .files import read_weather_file
 from .mend import mended
 from .power_service import power_reading
-from .quality import AuditCheck, audit_record
+from .quality import AUDITED, AuditCheck, audit_record
 from .readings import Reading
 from .record import runs, stamp
 from .route import route_weather
@@ -97,7 +97,8 @@ def weather_of(reading: Reading, site: Site, *, years: int) -> Weather:
     InputError
         The audit finds what no answer could be trusted on, a typical year has a long gap, a record no whole year.
     """
-    _refuse(audit_of(reading, site), name=reading.name)
+    checks = audit_of(reading, site)
+    _refuse(checks, name=reading.name)
     place = place_of(reading, site)
     sun = sun_height(pd.DatetimeIndex(reading.table.index), reading.step_h, place)
     table, cautions = mended(reading, sun, site)
@@ -116,7 +117,7 @@ def weather_of(reading: Reading, site: Site, *, years: int) -> Weather:
         kind=reading.kind,
         origin=f"{reading.name}: {kind}, {step}",
         digest=table_digest(table),
-        cautions=(*cautions, *more, *_place_cautions(reading, site)),
+        cautions=(*cautions, *more, *_place_cautions(reading, site), *_findings(checks, name=reading.name)),
     )
 
 
@@ -130,6 +131,12 @@ def _refuse(checks: tuple[AuditCheck, ...], *, name: str) -> None:
     fatal = [check for check in checks if check.fatal and not check.passed and check.code != "gaps"]
     if fatal:
         raise InputError(Fault(f"{name}: {check.code}", check.found, check.instead) for check in fatal)
+
+
+def _findings(checks: tuple[AuditCheck, ...], *, name: str) -> tuple[Caution, ...]:
+    """What the audit found and an answer can live with; of gaps whoever fills them tells."""
+    failed = [check for check in checks if not check.passed and not check.fatal and check.code != "gaps"]
+    return tuple(Caution(f"{AUDITED}{check.code}", name, check.text) for check in failed)
 
 
 def _refuse_holes(table: pd.DataFrame, reading: Reading) -> None:

@@ -134,7 +134,7 @@ def _steady_flows(rows: Rows) -> Sums:
     if block.pack.off_draw_w > 0:
         flows["off_draw"] = block.pack.off_draw_w * per_ah * rows.hours * rows.out
     if window.heated_y is not None:
-        on = rows.hours * (1.0 - rows.out) * rows.per_year(window.heated_y.astype(float))
+        on = rows.hours * (1.0 - rows.out) * rows.per_year(window.heated_y)
         flows["heater"] = block.pack.heater_w * per_ah * on
     return flows
 

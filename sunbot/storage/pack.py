@@ -107,6 +107,7 @@ class Pack:
     off_draw_w: float
     heater_w: float
     heater_on_below_c: float
+    box_loss_w_per_k: float | None
     box_lag_h: float
     box_rise_c: float
 
@@ -154,6 +155,7 @@ def pack_of(battery: Battery, *, age: Age = "worn") -> Pack:
         off_draw_w=battery.off_draw_w,
         heater_w=battery.heater_w,
         heater_on_below_c=battery.heater_on_below_c,
+        box_loss_w_per_k=battery.box_loss_w_per_k,
         box_lag_h=battery.box_lag_h,
         box_rise_c=battery.box_rise_c,
     )

@@ -11,6 +11,7 @@ from ..calendar import Lanes
 from ..demand.carriers import Asked, Demand
 from ..harvest.carriers import Supply
 from ..types import BoolArray, FloatArray, IntArray
+from .box import heated_box_c
 from .layout import Layout, OverVolts
 from .pack import Conditions, Pack, conditions, filling_per_h
 
@@ -63,7 +64,7 @@ class Window:
 
     hours : float where all lanes step alike, else broadcasting. real : lanes that step at all, None = all.
     bright : some panel offers something. due : levels that ask for something.
-    heated : steps in which the heater holds the box, broadcasting mask; empty without a heater.
+    heated : share of the heater's watts drawn in each step, broadcasting; None where it rests, empty without a heater.
     """
 
     n: int
@@ -82,7 +83,7 @@ class Window:
     heated: list[FloatArray | None]
     cold_pack: Conditions
     warm_pack: Conditions | None
-    heated_y: BoolArray | None
+    heated_y: FloatArray | None
     bright: list[bool]
     due: list[tuple[int, ...]]
     floor_at_top: bool
@@ -136,7 +137,7 @@ def window(source: Source, steps: slice, years: IntArray, *, layout: Layout, acc
         warm_box_y=box_y if warm_y is None else warm_y,
         cold=_coefs(cold_pack, hours_y, pack=pack, layout=layout),
         warm=[] if warm_pack is None else _coefs(warm_pack, hours_y, pack=pack, layout=layout),
-        heated=[] if heated_y is None else [over(row.astype(float)) if row.any() else None for row in heated_y],
+        heated=[] if heated_y is None else [over(row) if row.any() else None for row in heated_y],
         cold_pack=cold_pack,
         warm_pack=warm_pack,
         heated_y=heated_y,
@@ -156,12 +157,12 @@ def _per(hours: FloatArray) -> FloatArray:
     return np.divide(1.0, hours, out=np.zeros_like(hours), where=hours > 0)
 
 
-def _heated(pack: Pack, box_c: FloatArray) -> tuple[FloatArray | None, BoolArray | None]:
-    """Box temperature with loads and heater on, and where the heater draws; None where it never does."""
-    heated = box_c < pack.heater_on_below_c
-    if pack.heater_w <= 0 or not heated.any():
+def _heated(pack: Pack, box_c: FloatArray) -> tuple[FloatArray | None, FloatArray | None]:
+    """Box temperature with loads and heater on, and the share of the heater's watts; None where it never draws."""
+    if pack.heater_w <= 0:
         return None, None
-    return np.maximum(box_c, pack.heater_on_below_c), heated
+    warm_c, share = heated_box_c(pack, box_c)
+    return (warm_c, share) if share.any() else (None, None)
 
 
 def _due(work_w: FloatArray) -> list[tuple[int, ...]]:

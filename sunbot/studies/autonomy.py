@@ -11,6 +11,7 @@ from ..inputs.robot import Robot
 from ..storage import autonomy_h
 from ..types import FloatArray
 from .chain import Age, Chain
+from .heating import box_of
 from .months import month_hours, month_sums
 
 WEEK_H = 168.0
@@ -18,7 +19,10 @@ WEEK_H = 168.0
 
 @dataclass(frozen=True)
 class Autonomy:
-    """Hours from full to cut-off under the essential load of the hungriest month, in its mean cold; None: no end."""
+    """Hours from full to cut-off under the essential load and heater of the hungriest month, in its mean cold.
+
+    None: no end.
+    """
 
     dark_new_h: float | None
     dark_worn_h: float | None
@@ -37,16 +41,17 @@ class Autonomy:
 
 def autonomy_of(chain: Chain, robot: Robot) -> Autonomy:
     """Autonomy of the robot as filed; of months equally hungry the coldest counts."""
-    lanes = chain.lanes(robot)
-    essential_w = chain.essential_w(robot) + robot.controller.own_use_w
+    lanes, box = chain.lanes(robot), box_of(chain, robot)
+    essential_w = chain.essential_w(robot) + robot.controller.own_use_w + box.heater_w
     air_c = chain.weather_at(robot).table["temp_air"].to_numpy()
     hours_out = month_hours(lanes)
     months = np.flatnonzero(hours_out > 0)
-    load_w, cold_c = (month_sums(values, lanes)[months] / hours_out[months] for values in (essential_w, air_c))
+    means = (month_sums(values, lanes)[months] / hours_out[months] for values in (essential_w, air_c, box.lift_k))
+    load_w, cold_c, lift_k = means
     hungry = load_w >= load_w.max() * (1.0 - 1e-6)
     at = int(np.flatnonzero(hungry)[np.argmin(cold_c[hungry])])
     week_w = darkest_week_w(chain.offer_w(robot)[lanes.row], lanes.step_h, ring=robot.deployment is None)
-    temp_c = float(cold_c[at]) + robot.battery.box_rise_c
+    temp_c = float(cold_c[at] + lift_k[at]) + robot.battery.box_rise_c
 
     def hours(age: Age, harvest_w: float) -> float | None:
         draw_w = float(load_w[at]) - harvest_w

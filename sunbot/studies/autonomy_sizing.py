@@ -11,6 +11,7 @@ from ..inputs.robot import Robot
 from ..storage import Pack, usable_share
 from ..types import FloatArray
 from .chain import Chain
+from .heating import box_of
 from .months import month_hours, month_sums
 
 if TYPE_CHECKING:
@@ -98,10 +99,14 @@ def size_by_autonomy(chain: Chain, robot: Robot, *, taken: Recommended | None) -
 
 
 def _by_month(chain: Chain, robot: Robot) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Load and harvest [Wh/day] and air [°C], means of each month the robot is out; (n_months,) each."""
-    lanes, air_c = chain.lanes(robot), chain.weather_at(robot).table["temp_air"].to_numpy()
+    """Load with heater and harvest [Wh/day], and air as warm as the heater makes it [°C]; (n_months,) each.
+
+    Means of each month the robot is out.
+    """
+    lanes, box = chain.lanes(robot), box_of(chain, robot)
+    air_c = chain.weather_at(robot).table["temp_air"].to_numpy() + box.lift_k
     hours = month_hours(lanes)
-    series = (24.0 * chain.asked_w(robot), 24.0 * chain.offer_w(robot), air_c)
+    series = (24.0 * (chain.asked_w(robot) + box.heater_w), 24.0 * chain.offer_w(robot), air_c)
     out = [month_sums(values, lanes)[hours > 0] / hours[hours > 0] for values in series]
     return out[0], out[1], out[2]
 

@@ -9,10 +9,14 @@ import numpy as np
 from ..demand import rail_cautions
 from ..harvest import supply_cautions
 from ..inputs.robot import Robot
+from ..inputs.site import Site
 from ..light import ground_cautions, window_cautions
-from ..storage import Balance, Pack, box_temp_c, resistance_ohm
+from ..sky import Weather
+from ..storage import Balance, Pack, resistance_ohm
 from ..types import Caution, FloatArray
 from .chain import Chain
+from .heating import box_of, heater_cautions, two_digits
+from .pack_cautions import pack_cautions
 from .statistics import wilson_interval, years_to_settle
 from .verdict import Verdict
 
@@ -21,6 +25,9 @@ BLOCKED_NOTED = 0.01
 
 CHARGING_OVER_REST = 1.08
 """Common practice: a pack on charge stands at most so much above its rest voltage when full."""
+
+MOST_YEARS = 500
+"""As many weather years can be asked for."""
 
 SAFETY = {
     "lithium": "Lithium cells need a protection circuit, a fuse at the pack, and no charging below freezing: charging "
@@ -32,8 +39,12 @@ SAFETY = {
 SAFETY_TAIL = " Local codes and licensed practice go first."
 
 
-def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
-    """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery."""
+def standing_cautions(chain: Chain, robot: Robot, *, sized: Robot | None = None) -> tuple[Caution, ...]:
+    """Cautions that hold whatever the outcome: weather, panels and controller, rails, battery.
+
+    sized : the robot with panels and battery of another size, for what goes by the size of the pack.
+    """
+    sized = robot if sized is None else sized
     return (
         *chain.weather.cautions,
         *ground_cautions(robot),
@@ -45,7 +56,8 @@ def standing_cautions(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
             supply=chain.supply(robot),
             within=chain.out(robot),
         ),
-        *_rails(chain, robot),
+        *_rails(chain, sized),
+        *pack_cautions(chain, sized, filed=robot),
         *_battery(chain, robot),
     )
 
@@ -57,36 +69,56 @@ def check_cautions(
 
     ``survival_coarse`` : share alive with 0.15 less light, told where the climate is read off the world table.
     """
-    coarse = robot.site.climate is not None and robot.site.climate.coarse and chain.weather.kind == "generated"
+    several = chain.weather.kind in ("generated", "record")
+    outcome = _outcome(robot, balance, verdict) if several else _of_the_pack(balance)
+    standing = standing_cautions(chain, robot)
+    told = {caution.code for caution in standing}  # with more figures than the outcome has
     return (
-        *_outcome(robot, balance, verdict),
-        *([_coarse_climate(survival_coarse)] if coarse else []),
-        *standing_cautions(chain, robot),
+        *(caution for caution in outcome if caution.code not in told),
+        *coarse_climate(robot.site, chain.weather, survival=survival_coarse),
+        *standing,
     )
 
 
-def _coarse_climate(survival: float) -> Caution:
-    return Caution(
+def coarse_climate(site: Site, weather: Weather, *, survival: float | None = None) -> Iterator[Caution]:
+    """That the light is read off the table of the world; ``survival`` : share alive with 0.15 less light."""
+    if site.climate is None or not site.climate.coarse or weather.kind != "generated":
+        return
+    with_less = "" if survival is None else f" With 15 % less light the robot is alive in {survival:.0%} of years."
+    yield Caution(
         "coarse-climate",
         "climate",
         "The light is read off a coarse table of the world: most months lie within 15 %, coasts and mountains further "
-        f"off. With 15 % less light the robot is alive in {survival:.0%} of years. Take a record of the place before "
-        "you decide.",
+        f"off.{with_less} Take a record of the place before you decide.",
     )
 
 
+def few_years(survived: int, years: int, *, robot: Robot) -> Iterator[Caution]:
+    """Whether as many years leave it open that the target is met, and how many would not."""
+    target = robot.target.survival
+    low, _ = wilson_interval(survived, years)
+    if low >= target:
+        return
+    noun = "years" if robot.deployment is None else "deployments"
+    one = "1 year leaves" if years == 1 else f"{years} {noun} leave"
+    enough = years_to_settle(target, survived / years)
+    if survived == years:
+        more = "" if enough is None else f"; {enough} without a failure would settle {target:.0%} (--years {enough})"
+    elif enough is None:
+        more = f"; at that share of failures no number of years settles {target:.0%}"
+    else:
+        more = f"; if failures stay as rare, about {enough} would settle {target:.0%}"
+        more += f" (--years {enough})" if enough <= MOST_YEARS else ", more than can be run"
+    yield Caution("few-years", "survival", f"{one} room for a true share of {low:.0%}{more}.")
+
+
 def _outcome(robot: Robot, balance: Balance, verdict: Verdict) -> Iterator[Caution]:
-    years, survived, target = verdict.years, int(verdict.years_survived[0]), robot.target.survival
-    if years > 1 and verdict.survival_met[0]:
-        low, _ = wilson_interval(survived, years)
-        enough = years_to_settle(target)
-        if low < target and enough is not None:
-            yield Caution(
-                "few-years",
-                "survival",
-                f"{years} years leave room for a true share of {low:.0%}; {enough} years without a failure would "
-                f"settle {target:.0%} (--years {enough}).",
-            )
+    if verdict.survival_met[0]:
+        yield from few_years(int(verdict.years_survived[0]), verdict.years, robot=robot)
+    yield from _of_the_pack(balance)
+
+
+def _of_the_pack(balance: Balance) -> Iterator[Caution]:
     if balance.cannot_give[0]:
         yield Caution(
             "pack-too-weak",
@@ -106,8 +138,6 @@ def _outcome(robot: Robot, balance: Balance, verdict: Verdict) -> Iterator[Cauti
 def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: int) -> Iterator[Caution]:
     """Whether the box gets colder or hotter than the cells are made to work in; the balance does not cut them off."""
     kind = pack.kind
-    if pack.heater_w > 0:
-        box_c = np.maximum(box_c, pack.heater_on_below_c)
     for code, beyond, bounds in (
         ("battery-too-cold", box_c < kind.work_min_c, f"below {kind.work_min_c:g} degC, down to {box_c.min():.0f},"),
         ("battery-too-hot", box_c > kind.work_max_c, f"above {kind.work_max_c:g} degC, up to {box_c.max():.0f},"),
@@ -116,8 +146,9 @@ def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: i
             yield Caution(
                 code,
                 "battery",
-                f"The box is {bounds} for {beyond.sum() * step_h / years:.2g} h a year. Such cells are not made to "
-                "work there: they may fail, or their protection may cut the robot off, and the answer counts neither.",
+                f"The box is {bounds} for {two_digits(beyond.sum() * step_h / years)} h a year. Such cells are not "
+                "made to work there: they may fail, or their protection may cut the robot off, and the answer counts "
+                "neither.",
             )
 
 
@@ -145,18 +176,15 @@ def _while_out(chain: Chain, robot: Robot, values: FloatArray) -> FloatArray:
 def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
     battery, weather = robot.battery, chain.weather_at(robot)
     pack = chain.pack(robot)
-    box_c = box_temp_c(
-        weather.table["temp_air"].to_numpy(), step_h=weather.step_h, lag_h=pack.box_lag_h, rise_c=pack.box_rise_c
-    )
-    box_c, offer_w = (_while_out(chain, robot, values) for values in (box_c, chain.offer_w(robot)))
+    box = box_of(chain, robot)
+    cold_c, box_c, offer_w = (_while_out(chain, robot, x) for x in (box.box_c, box.warm_c, chain.offer_w(robot)))
     offered = float(offer_w.sum())
     for code, blocked, limit_c, word in (
         ("frost", box_c < pack.charge_min_c, pack.charge_min_c, "below"),
         ("heat", box_c > pack.charge_max_c, pack.charge_max_c, "above"),
     ):
         share = float(offer_w[blocked].sum()) / offered if offered > 0 else 0.0
-        heated = code == "frost" and battery.heater_w > 0 and battery.heater_on_below_c >= pack.charge_min_c
-        if share > BLOCKED_NOTED and not heated:
+        if share > BLOCKED_NOTED:
             yield Caution(
                 code,
                 "battery",
@@ -164,6 +192,7 @@ def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
                 "must not be charged; it can then only feed the loads. "
                 + ("Think of box_rise_c, heater_w or another chemistry." if code == "frost" else "Shade the box."),
             )
+    yield from heater_cautions(battery, cold_c, box_c, step_h=weather.step_h, years=weather.n_years)
     yield from _beyond_its_window(pack, box_c, step_h=weather.step_h, years=weather.n_years)
     thresholds = any(load.skip_below_soc is not None for load in robot.loads)
     if battery.chemistry == "lifepo4" and thresholds:

@@ -25,10 +25,11 @@ from .chain import Chain
 from .flows import EnergyYear, Step, energy_year, light_to_panel
 from .inputs_used import InputsUsed, inputs_used
 from .months import month_table
+from .outage_cause import OutageCause, outage_cause
 from .plain import plain_document
 from .statistics import wilson_interval
 from .verdict import Verdict, verdict_on
-from .ways_out import Nearness, WayOut, nearness, tilt_way_out
+from .ways_out import Nearness, WayOut, nearness, tilt_way_out, warm_way_out
 from .what_ifs import filed_and_dimmed, parked_wrong
 
 
@@ -37,6 +38,7 @@ class Outages:
     """Outages of the essential loads over all years.
 
     first : instant the first one began. until_restart_h : mean time until it is back by itself or someone came.
+    cause : what the cold had to do with them; None where there are none.
     """
 
     hours_per_year: float
@@ -44,6 +46,7 @@ class Outages:
     longest_h: float
     first: pd.Timestamp | None
     until_restart_h: float | None
+    cause: OutageCause | None
 
 
 @dataclass(frozen=True, eq=False)
@@ -81,8 +84,8 @@ class CheckResult:
 
     @property
     def met(self) -> bool:
-        """Whether the target is met."""
-        return bool(self.verdict.target_met[0])
+        """Whether the target is met; a cloudless year can show that it is missed, never that it is met."""
+        return bool(self.verdict.target_met[0]) and self.weather.kind != "clear-sky"
 
     @cached_property
     def interval(self) -> tuple[float, float] | None:
@@ -124,6 +127,7 @@ class CheckResult:
                     "longest_h": self.outages.longest_h,
                     "first": self.outages.first,
                     "until_restart_h": self.outages.until_restart_h,
+                    "cold": None if self.outages.cause is None else self.outages.cause.__dict__,
                 },
                 "ways_out": [way.__dict__ for way in self.ways_out],
                 "extra_load_w": self.extra_load_w,
@@ -168,9 +172,10 @@ def check_with_nearness(chain: Chain, robot: Robot, *, years: int, seed: int, tr
     with Beside(partial(_aside, chain, robot)) as helper:
         helper.ask(None)
         result = check_on(chain, robot, years=years, seed=seed, trace=trace)
-        tilt = None if result.met else tilt_way_out(chain, robot)
+        met = bool(result.verdict.target_met[0])
+        others = () if met else (tilt_way_out(chain, robot), warm_way_out(chain, robot, result.outages.cause))
         near, worst = helper.answer()
-    ways = [*near.ways_out, *([] if tilt is None else [tilt])]
+    ways = [*near.ways_out, *(way for way in others if way is not None)]
     ways.sort(key=lambda way: way.times)
     differs = worst is not None and worst != float(result.verdict.survival[0])
     return replace(
@@ -208,7 +213,7 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
         visits_per_year=float(balance.visits[:, 0].mean()),
         months=months,
         autonomy=autonomy_of(chain, robot),
-        outages=_outages(balance, lanes, chain.weather),
+        outages=_outages(balance, lanes, chain.weather, cause=outage_cause(chain, robot, balance, lanes)),
         unserved_share=_unserved_share(balance),
         energy=energy,
         light_steps=light_to_panel(robot, chain.lights(robot), chain.harvest_yield(robot), panel_wh=energy.panel),
@@ -221,7 +226,7 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
     )
 
 
-def _outages(balance: Balance, lanes: Lanes, weather: Weather) -> Outages:
+def _outages(balance: Balance, lanes: Lanes, weather: Weather, *, cause: OutageCause | None) -> Outages:
     if balance.outages is None or balance.longest_out_h is None or balance.first_out is None:
         raise RuntimeError("the balance kept no outages")
     began = balance.first_out[:, :, 0]
@@ -236,6 +241,7 @@ def _outages(balance: Balance, lanes: Lanes, weather: Weather) -> Outages:
         longest_h=float(balance.longest_out_h[:, 0].max()),
         first=first,
         until_restart_h=hours / count if count > 0 else None,
+        cause=cause,
     )
 
 

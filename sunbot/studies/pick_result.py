@@ -97,8 +97,8 @@ class PickResult:
 
     @property
     def met(self) -> bool:
-        """Whether any pair in range meets the target."""
-        return self.recommended is not None
+        """Whether any pair in range meets the target; under a cloudless year none is shown to."""
+        return self.recommended is not None and self.weather.kind != "clear-sky"
 
     @property
     def pairs_table(self) -> pd.DataFrame:

@@ -16,7 +16,7 @@ from ..sky.other_years import other_years
 from ..types import Caution, FloatArray, IntArray
 from .autonomy_sizing import size_by_autonomy
 from .beside import Beside
-from .cautions import standing_cautions
+from .cautions import coarse_climate, few_years, standing_cautions
 from .chain import Chain
 from .effort import Effort, Watcher, balance_cost, supply_cost
 from .frontier import WIDTH, Frontier, Judged
@@ -24,6 +24,7 @@ from .inputs_used import inputs_used
 from .ladder import STEPS_UP, Ladder
 from .pick_result import ControllerOption, Neighbour, Pair, PickResult, Recommended, SurvivalMap
 from .resizing import resized
+from .what_ifs import filed_and_dimmed
 
 USUAL_X = (0.5, 0.75, 1.0, 1.25, 1.5, 2.0, 2.5, 3.0, 4.0, 5.0, 6.0, 8.0)
 """Panels tried when none are named, as multiples of the one filed."""
@@ -233,8 +234,20 @@ def _survival_map(frontier: Frontier, pairs: tuple[Pair, ...]) -> SurvivalMap | 
     return SurvivalMap(watts=frontier.sizes, battery_ah=ah, survival=survival.reshape(watts_at.shape))
 
 
+def _survival_dimmed(chain: Chain, robot: Robot, sized: Robot | None) -> float | None:
+    """Share of years the pair taken survives with 0.15 less light; None where nothing asks for it."""
+    coarse = robot.site.climate is not None and robot.site.climate.coarse
+    if sized is None or not coarse or chain.weather.kind != "generated":
+        return None
+    return float(filed_and_dimmed(chain, sized)[1][1])
+
+
 def _cautions(chain: Chain, robot: Robot, taken: Recommended | None) -> tuple[Caution, ...]:
-    found = list(standing_cautions(chain, robot))
+    sized = None if taken is None else resized(robot, watts=taken.watts, battery_ah=taken.battery_ah)
+    found = list(standing_cautions(chain, robot, sized=sized))
+    found += coarse_climate(robot.site, chain.weather, survival=_survival_dimmed(chain, robot, sized))
+    if taken is not None and chain.weather.kind in ("generated", "record"):
+        found += few_years(round(taken.survival * chain.weather.n_years), chain.weather.n_years, robot=robot)
     limit_a = robot.controller.max_charge_a
     full_v = chain.pack(robot).curve.rest_v[-1]
     if taken is not None and limit_a is not None and taken.watts * 0.9 > limit_a * full_v:

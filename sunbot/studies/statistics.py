@@ -29,8 +29,8 @@ def wilson_interval(successes: int, trials: int) -> tuple[float, float]:
     return low, 1.0 if successes == trials else min(1.0, middle + half)
 
 
-def years_to_settle(target: float) -> int | None:
-    """Years without a failure after which the lower end of the interval reaches ``target``; None for a target of 1."""
-    if target >= 1:
+def years_to_settle(target: float, share: float = 1.0) -> int | None:
+    """Years after which the lower end of the interval reaches ``target`` if ``share`` of them survive; None: never."""
+    if target >= 1 or share <= target:
         return None
-    return math.ceil(Z_95**2 * target / (1 - target) - 1e-9)
+    return math.ceil(Z_95**2 * target * (1 - target) / (share - target) ** 2 - 1e-9)

@@ -13,8 +13,9 @@ from ..calendar import Clock, energy_years, standard_clock
 from ..inputs.site import Site
 from ..light import light_on_level, sun_over
 from ..sky import Weather, audit_of, reading_for, weather_for, weather_of
-from ..sky.quality import AuditCheck, audit_record, merged
+from ..sky.quality import AUDITED, AuditCheck, audit_record, merged
 from ..types import Caution, FloatArray
+from .cautions import coarse_climate
 from .dark_spells import DarkSpell, DateArray, dark_spells, days_of
 from .inputs_used import InputsUsed, inputs_used
 from .plain import plain
@@ -100,10 +101,15 @@ def survey(site: Site, *, weather: Weather | None = None, years: int = 50, seed:
         months=months,
         dark_spells=dark_spells(daily_wh_m2, dates, lengths=SURVEY_DAYS, seed=seed),
         audit=audit,
-        cautions=weather.cautions,
+        cautions=(*_not_audited(weather), *coarse_climate(site, weather)),
         daily_wh_m2=daily_wh_m2,
         dates=dates,
     )
+
+
+def _not_audited(weather: Weather) -> tuple[Caution, ...]:
+    """The weather's cautions but for the audit's findings, which the survey tells by themselves."""
+    return tuple(caution for caution in weather.cautions if not caution.code.startswith(AUDITED))
 
 
 def _weather_and_audit(

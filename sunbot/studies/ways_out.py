@@ -12,6 +12,7 @@ from ..storage import Designs, as_filed
 from ..types import BoolArray, FloatArray, IntArray
 from .chain import Chain
 from .designs import repeated
+from .outage_cause import OutageCause
 from .search import smallest
 from .tilts import few_years, tilted, worst_ratio
 from .verdict import verdict_on
@@ -32,6 +33,10 @@ LEAST_W, MOST_ROUNDS = 1e-3, 6
 """A robot that asks for next to nothing is tried from here on, each round 45 times as far as the one before."""
 TILTS_DEG = np.arange(0.0, 91.0, 15.0)
 TILT_YEARS = 3
+WARMER_K = (20.0, 10.0, 5.0)
+"""Boxes tried where the cold is a cause: the warmest first, for if that is not enough, none is."""
+COLD_NOTED = 0.1
+"""Share of harvest blocked by frost, or of charge locked by cold, from which on a warmer box is tried."""
 
 
 def rounded_up(value: float, digits: int) -> float:
@@ -186,6 +191,23 @@ def tilt_way_out(chain: Chain, robot: Robot) -> WayOut | None:
     half_way = (best + filed) / 2
     least = half_way if _meets_at(chain, robot, half_way) else best
     return WayOut("tilt", f"tilt {filed:.3g} deg -> {least:.3g} deg", least, 1.0 + abs(least - filed) / 90.0)
+
+
+def warm_way_out(chain: Chain, robot: Robot, cause: OutageCause | None) -> WayOut | None:
+    """The least of a few warmer boxes that meets the target; None where none does, or the cold is not the cause."""
+    cutoff_soc = chain.pack(robot).cutoff_soc
+    if cause is None or (cause.frost_share < COLD_NOTED and cause.empty_at_soc - cutoff_soc < COLD_NOTED):
+        return None
+    battery, enough = robot.battery, None
+    for more_k in WARMER_K:
+        rise_c = battery.box_rise_c + more_k
+        warm = robot.model_copy(update={"battery": battery.model_copy(update={"box_rise_c": rise_c})})
+        balance = chain.run(warm, supply=chain.supply(robot), lanes=chain.lanes(robot), keep="verdict")
+        if not verdict_on(balance, robot.target).target_met[0]:
+            break
+        change = f"box {more_k:g} K warmer (box_rise_c = {rise_c:g}: insulation, or the waste heat of the electronics)"
+        enough = WayOut("box", change, rise_c, 1.0 + more_k / WARMER_K[0])
+    return enough
 
 
 def _meets_at(chain: Chain, robot: Robot, tilt_deg: float) -> bool:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import pytest
 
 from sunbot.studies.statistics import wilson_interval, years_to_settle
@@ -36,6 +38,17 @@ def test_years_without_a_failure_that_settle_a_share():
         assert wilson_interval(years - 1, years - 1)[0] < target
     assert years_to_settle(0.95) == 73
     assert years_to_settle(1.0) is None
+
+
+def test_years_that_settle_a_share_with_failures_in_it():
+    """Where one year in fifty fails, the low end reaches the target after as many; a share at the target never does."""
+    for target, survive, of in ((0.95, 49, 50), (0.8, 9, 10), (0.5, 3, 4)):
+        times = years_to_settle(target, survive / of) / of
+        enough, short = math.ceil(times), math.ceil(times) - 1
+        assert wilson_interval(enough * survive, enough * of)[0] >= target
+        assert wilson_interval(short * survive, short * of)[0] < target
+    assert years_to_settle(0.95, 0.95) is None
+    assert years_to_settle(0.95, 0.90) is None
 
 
 def test_no_share_is_refused():

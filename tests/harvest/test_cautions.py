@@ -49,3 +49,29 @@ def test_dim_light_and_a_hungry_controller_are_named_once_there_is_light(make_ro
     for lights, expected in ((dim, ["dim-light", "controller-hungry"]), (bright, [])):
         made = supply(lights, weather, robot, watts=[5.0], battery_v=[13.0])
         assert _codes(supply_cautions(robot, weather, lights=lights, supply=made)) == expected
+
+
+@pytest.mark.parametrize("kind", ["pwm", "direct"])
+def test_a_string_of_twice_the_battery_wastes_half_without_a_converter(make_robot, make_weather, kind):
+    """Two 18 V panels in series at 13.7 V give the current of one: 13.7 V x 2.35 A of 80 W, 60 % are lost."""
+    # by hand: 36 cells at 13.7 V give nearly their short-circuit current
+    for changes, remedy in (
+        ({"in_series": 2}, "wire them in parallel"),
+        ({"vmp_v": 36.0, "imp_a": 2.22, "voc_v": 43.6, "watts": 80}, "take a panel of fewer volts"),
+    ):
+        robot = make_robot({"wire": WIRE, **changes}, **{**SAFE, "kind": kind})
+        (found,) = [each for each in supply_cautions(robot, make_weather([20.0])) if each.code == "spare-volts"]
+        assert found.where == "panel p0"
+        assert "36.0 V" in found.text
+        assert "about 60 %" in found.text if kind == "pwm" else "about 59 %" in found.text
+        assert remedy in found.text
+
+
+def test_a_panel_made_for_the_battery_or_behind_a_converter_wastes_no_volts(make_robot, make_weather):
+    """Full, the pack stands at 13.7 V: 1.6 times are 21.9 V; a tracker takes any voltage."""
+    for vmp_v, fires in ((21.8, False), (22.0, True)):
+        panel = {"wire": WIRE, "vmp_v": vmp_v, "imp_a": 40 / vmp_v, "voc_v": 1.21 * vmp_v, "isc_a": 42.4 / vmp_v}
+        robot = make_robot(panel, **SAFE, kind="pwm")
+        assert ("spare-volts" in _codes(supply_cautions(robot, make_weather([20.0])))) == fires
+    series = make_robot({"wire": WIRE, "in_series": 2}, max_charge_a=10.0, max_input_v=100.0)
+    assert "spare-volts" not in _codes(supply_cautions(series, make_weather([20.0])))

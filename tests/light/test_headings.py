@@ -41,7 +41,8 @@ def test_roaming_lies_between_the_best_and_the_worst_fixed_heading(make_robot, y
         by_rule[parked] = monthly(light, weather)
         assert (by_rule[parked] < fixed.max(axis=0)).all()
         assert (by_rule[parked] > 0.999999 * fixed.min(axis=0)).all()
-    np.testing.assert_allclose(by_rule["mean"], fixed.mean(axis=0), rtol=1e-9)
+        # tables of many headings are in single precision, 6e-8 of a value
+        np.testing.assert_allclose(by_rule["mean"], fixed.mean(axis=0), rtol=1e-7)
     # in summer the side that is poorest over the day can be the better one early and late, when this robot stands
     dark_half = [9, 10, 11, 0, 1, 2]
     assert (by_rule["worst"] < by_rule["random"])[dark_half].all()
@@ -54,7 +55,8 @@ def test_a_robot_that_never_moves_and_lies_the_wrong_way_has_the_worst_heading(m
     fixed = [
         monthly(lights_on(make_robot(30.0, heading_deg=h), weather, sun)[0], weather) for h in np.arange(16) * 22.5
     ]
-    np.testing.assert_allclose(monthly(light, weather), np.min(fixed, axis=0), rtol=1e-9)
+    # 1e-7: single precision, as above
+    np.testing.assert_allclose(monthly(light, weather), np.min(fixed, axis=0), rtol=1e-7)
 
 
 @pytest.mark.parametrize("azimuth_deg", [0.0, 130.0])

@@ -273,9 +273,16 @@ class Walk:
     def step(self, hours):
         case, pack, b, out = self.case, self.pack, self.case.battery, self.out
         natural = self.box[self.t]
-        heated = b.heater_w > 0 and natural < b.heater_on_below_c
-        temp = max(natural, b.heater_on_below_c) if heated else natural
-        heater = b.heater_w if heated else 0.0
+        temp, heater = natural, 0.0
+        if b.heater_w > 0 and natural < b.heater_on_below_c:
+            temp, heater = b.heater_on_below_c, b.heater_w
+            if b.box_loss_w_per_k is not None:
+                # A thermostat: what flows out through the walls at its temperature, if the heater has that much.
+                flows_w = (b.heater_on_below_c - natural) * b.box_loss_w_per_k
+                if flows_w <= b.heater_w:
+                    heater = flows_w
+                else:
+                    temp = natural + b.heater_w / b.box_loss_w_per_k
         cut_wh = pack.threshold_wh(pack.cutoff, temp)
 
         if not self.on:

@@ -22,10 +22,13 @@ def close(ours, theirs, scale):
     return np.abs(np.asarray(ours) - np.asarray(theirs)).max() <= 1e-9 * max(scale, 1.0)
 
 
-@pytest.mark.parametrize("seed", range(16))
-def test_lanes_side_by_side_equal_the_plain_loop_gone_round_step_by_step(seed, scalar_loop, worlds):
+HEATED = [(seed, {"heater_w": 1.0, "box_loss": loss}) for seed in (40, 41, 42) for loss in (0.03, 0.25)]
+
+
+@pytest.mark.parametrize(("seed", "force"), [*((seed, {}) for seed in range(16)), *HEATED])
+def test_lanes_side_by_side_equal_the_plain_loop_gone_round_step_by_step(seed, force, scalar_loop, worlds):
     """Every sum, outage and end state of random designs of every kind equals the scalar loop's to 1e-9."""
-    world = worlds.random_world(seed)
+    world = worlds.random_world(seed, **force)
     ours = world.run("months")
     for d in range(world.designs.battery_ah.size):
         years, settled = scalar_loop.go_round(worlds.scalar_case(scalar_loop, world, d))

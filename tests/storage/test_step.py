@@ -69,6 +69,28 @@ def test_a_heater_opens_the_charge_window_and_is_paid_for(worlds):
     assert result.trace.box_temp_c == pytest.approx(np.ones((6, 1)))
 
 
+@pytest.mark.parametrize(
+    ("heater_w", "loss_w_per_k", "box_c", "drawn_w", "stored_w"),
+    [(3.0, 0.2, 1.0, 1.2, 7.5 - 4.0 - 1.2), (0.5, 0.2, -2.5, 0.5, 0.0), (3.0, 1e-9, 1.0, 0.0, 7.5 - 4.0)],
+)
+def test_a_thermostat_draws_what_the_box_loses(worlds, heater_w, loss_w_per_k, box_c, drawn_w, stored_w):
+    """Heat in = loss x lift: 6 K at 0.2 W/K take 1.2 W of 3; 0.5 W lift by 2.5 K only, and frost blocks the charge."""
+    battery = worlds.ideal("lifepo4", start_soc=0.6, heater_w=heater_w, box_loss_w_per_k=loss_w_per_k)
+    result = worlds.plain_world(battery, offer_w=np.full(6, 7.5), load_w=4.0, temp_c=-5.0).run("trace")
+    assert result.trace.box_temp_c == pytest.approx(np.full((6, 1), box_c))
+    assert result.ledger.heater[0, 0] == pytest.approx(6 * drawn_w, abs=1e-6)
+    assert result.ledger.stored[0, 0] == pytest.approx(6 * stored_w, rel=1e-6, abs=1e-6)
+
+
+def test_a_cut_robot_heats_only_in_the_share_of_the_step_before_the_cut(worlds):
+    """What the pack held above cut-off went to loads and thermostat in the ratio of their watts."""
+    battery = worlds.ideal("li-ion", start_soc=0.3, heater_w=3.0, box_loss_w_per_k=0.1)
+    result = worlds.plain_world(battery, offer_w=0.0, load_w=np.full(40, 4.0), temp_c=-9.0).run()
+    assert result.outages[0, 0] == 1
+    assert result.ledger.heater[0, 0] == pytest.approx((40 - result.hours_out.sum()) * 1.0)
+    assert result.ledger.loads[0, 0] == pytest.approx(4.0 * result.ledger.heater[0, 0])
+
+
 def test_loads_are_cut_within_the_step_and_a_fine_step_agrees(worlds):
     """The hour in which the pack runs out counts in part; steps of 1 h and of 3 min give the same hours out."""
     battery = worlds.ideal("li-ion", capacity_ah=2.0, cutoff_soc=0.1)

@@ -148,7 +148,10 @@ def random_world(seed, *, n_years=2, days=2, n_designs=3, **force):
         work_x=rng.uniform(0, 1.5, (12, n_levels, n_designs)),
         extra_w=rng.uniform(0, 0.5, n_designs),
     )
-    return World(battery, choose("age", ("worn", "new")), supply, demand, lanes, designs, air, row)
+    age = choose("age", ("worn", "new"))
+    # At 1 W the first warms by all that the cold of these worlds asks for, the last by 4 K at most.
+    battery = battery.model_copy(update={"box_loss_w_per_k": choose("box_loss", (None, 0.03, 0.25))})
+    return World(battery, age, supply, demand, lanes, designs, air, row)
 
 
 def one_design(world, d):

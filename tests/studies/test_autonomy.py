@@ -89,6 +89,46 @@ def test_the_hungriest_month_counts_and_of_equal_ones_the_coldest(chain, robots)
     assert autonomy_of(chain, robots.robot()).worst_month in (1, 2, 12)
 
 
+def in_frost(chain):
+    """The same years without light in air a little around -8 degC: at which hour of the day it ends hardly counts."""
+    hour = chain.weather.times.hour.to_numpy()
+    air_c = -8.0 + np.sin(2 * np.pi * (hour - 9) / 24)
+    return Chain(replace(chain.weather, table=chain.weather.table.assign(ghi=0.0, dni=0.0, dhi=0.0, temp_air=air_c)))
+
+
+@pytest.mark.parametrize(
+    ("heater", "share"),
+    [
+        ({"heater_w": 2.0}, 1.0),  # at full power without end
+        ({"heater_w": 2.0, "box_loss_w_per_k": 0.1}, 0.9 / 2.0),  # 9 K in the mean
+        ({"heater_w": 0.3, "box_loss_w_per_k": 0.1}, 1.0),  # never enough
+        ({}, 0.0),
+    ],
+)
+def test_the_hours_of_a_heated_pack_are_those_of_the_whole_balance_without_light(chain, robots, heater, share):
+    """From a full start to the first cut of a January in frost, the heater's draw included: within 2 %."""
+    frost = in_frost(chain)
+    robot = robots.robot(deployment={"from": "01-01", "to": "01-31"}, battery_ah=20.0)
+    robot = robot.model_copy(update={"battery": robot.battery.model_copy(update=heater)})
+    run, lanes = frost.run(robot, keep="trace"), frost.lanes(robot)
+    until_cut_h = (run.trace.on * lanes.step_h).sum(axis=0)
+    assert (run.outages == 1).all()
+    assert autonomy_of(frost, robot).dark_worn_h == pytest.approx(until_cut_h.mean(), rel=0.02)
+    heated_wh = run.ledger.heater[:, 0]
+    assert heated_wh == pytest.approx(share * heater.get("heater_w", 0.0) * until_cut_h, rel=0.05)
+
+
+def test_a_heater_makes_the_cold_month_the_hungriest(chain, robots):
+    """A lamp in July, outdone by the heater in the cold."""
+    robot = robots.robot()
+    lamp = robot.loads[0].model_copy(update={"name": "lamp", "months": (7,)})
+    lit = robot.model_copy(update={"loads": (robot.loads[0], lamp)})
+    heated = lit.model_copy(update={"battery": lit.battery.model_copy(update={"heater_w": 20.0})})
+    assert autonomy_of(chain, lit).worst_month == 7
+    assert autonomy_of(chain, heated).worst_month in (1, 2, 12)
+    assert autonomy_of(chain, heated).dark_worn_h < 0.5 * autonomy_of(chain, robot).dark_worn_h
+
+
 def test_a_load_the_pack_cannot_give_lasts_no_time_and_never_less(chain, robots):
     """No negative hours."""
     found = autonomy_of(chain, robots.robot(load_w=500.0, battery_ah=1.0))

@@ -60,6 +60,57 @@ def test_frost_counts_while_the_robot_is_out(chain, robots):
     assert "frost" not in summer
 
 
+def test_a_heater_silences_the_frost_only_as_far_as_it_warms_the_box(chain, robots):
+    """50 mW in a box that loses 0.2 W/K warm it by a quarter of a kelvin; 20 W keep it."""
+    weak = codes(chain, battery_of(robots, heater_w=0.05, box_loss_w_per_k=0.2))
+    strong = codes(chain, battery_of(robots, heater_w=20.0, box_loss_w_per_k=0.2))
+    assert "0 degC" in weak["frost"]
+    assert not {"frost", "heater-too-weak", "heater-taken-as-enough"} & set(strong)
+
+
+def in_air(chain, air_c):
+    """The same light in air of one temperature."""
+    return Chain(replace(chain.weather, table=chain.weather.table.assign(temp_air=air_c)))
+
+
+def test_a_heater_taken_as_enough_is_told_with_the_loss_it_needs(chain, robots):
+    """At -19 degC the box wants 20 K: 3 W do that at 0.15 W/K or less; nothing where it never runs."""
+    told = codes(in_air(chain, -19.0), battery_of(robots, heater_w=3.0))["heater-taken-as-enough"]
+    assert "1 degC" in told
+    assert "20 K" in told
+    assert "0.15 W/K" in told
+    assert "box_loss_w_per_k" in told
+    assert "heater-taken-as-enough" not in codes(in_air(chain, 2.0), battery_of(robots, heater_w=3.0))
+    assert "heater-taken-as-enough" not in codes(in_air(chain, -19.0), battery_of(robots))
+
+
+def test_a_heater_taken_as_enough_counts_the_cold_of_the_deployment_only(chain, robots):
+    """A summer that never sees the heater run says nothing of it."""
+    heated = battery_of(robots, heater_w=3.0)
+    june = robots.robot(**GENEROUS, deployment={"from": "06-10", "to": "08-20"})
+    assert "heater-taken-as-enough" in codes(chain, heated)
+    assert "heater-taken-as-enough" not in codes(chain, june.model_copy(update={"battery": heated.battery}))
+
+
+def test_a_heater_too_weak_is_told_with_its_hours_and_what_it_takes(chain, robots):
+    """At -19 degC all year 3 W at 0.3 W/K lift by 10 of 20 K: 8800 h a year, and 6 W or 0.15 W/K would do."""
+    told = codes(in_air(chain, -19.0), battery_of(robots, heater_w=3.0, box_loss_w_per_k=0.3))
+    for word in ("8800 h a year", "lift it by 10 K", "20 K", "takes 6 W", "0.15 W/K"):
+        assert word in told["heater-too-weak"]
+    assert "heater-taken-as-enough" not in told
+    assert "heater-too-weak" not in codes(in_air(chain, -19.0), battery_of(robots, heater_w=6.0, box_loss_w_per_k=0.3))
+
+
+@pytest.mark.parametrize(("heater_w", "loss_w_per_k"), [(1.0, 0.83), (1.35, 0.29)])
+def test_what_a_caution_says_would_do_does(chain, robots, heater_w, loss_w_per_k):
+    """Watts and loss are rounded to the safe side: taken at its word the caution is gone."""
+    weak = {"heater_w": heater_w, "box_loss_w_per_k": loss_w_per_k}
+    told = codes(chain, battery_of(robots, **weak))["heater-too-weak"]
+    watts, loss = (float(found) for found in re.search(r"takes ([\d.]+) W, .* than ([\d.]+) W/K", told).groups())
+    for change in ({"heater_w": watts}, {"box_loss_w_per_k": loss}):
+        assert "heater-too-weak" not in codes(chain, battery_of(robots, **(weak | change)))
+
+
 def test_heat_is_told_where_the_box_is_too_hot_to_be_charged(chain, robots):
     """The other end of the window."""
     assert "heat" in codes(chain, battery_of(robots, box_rise_c=35.0))
