@@ -22,7 +22,7 @@ practice; the same records have -0.21 to -0.43 in months below 5 degC, 0.44 to 0
 SPREAD_AT_ZERO_K, SPREAD_PER_K, LEAST_SPREAD_K = 4.3, -0.09, 1.2
 SPREAD_WITHOUT_SEASONS_K, SPREAD_PER_SEASON = 1.0, 0.45
 """Spread of a day's mean temperature: the colder the month the wider, and little where seasons differ little. Fitted
-to the same records, which it meets to two fifths: 4.0 to 4.9 K in Januaries near 0 degC, 2.0 at 15, 1.2 to 3.3 in July."""
+to these records, which it meets to two fifths: 4.0 to 4.9 K in Januaries near 0 degC, 2.0 at 15, 1.2 to 3.3 in July."""
 
 COLD_MONTH_RANGE, WARM_MONTH_RANGE = 0.35, 0.75
 """Growth of the daily range with clearness, both relative to their means; fitted to the same record."""
