@@ -109,7 +109,7 @@ CELL_KINDS: dict[str, CellKind] = {
 """By the chemistry's name in the robot file."""
 
 COLD_CHARGE_BELOW_C = 15.0
-"""Below this `cold_charge_c` holds."""
+"""Below this `cold_charge_c` holds. Common practice: data sheets cut the current below 10 to 15 °C."""
 
 LEAST_COLD_CAPACITY = 0.05
 """However cold, this share of the capacity stays usable; keeps the slope from passing zero."""

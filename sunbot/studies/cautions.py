@@ -24,7 +24,7 @@ BLOCKED_NOTED = 0.01
 """Share of the year's harvest offered to a battery too cold or too warm to be charged that is worth a word."""
 
 CHARGING_OVER_REST = 1.08
-"""Common practice: a pack on charge stands at most so much above its rest voltage when full."""
+"""Common practice: a pack on charge that no voltage holds (NiMH) stands at most so much above its full rest voltage."""
 
 MOST_YEARS = 500
 """As many weather years can be asked for."""
@@ -155,11 +155,11 @@ def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: i
 def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
     pack, air_c = chain.pack(robot), _while_out(chain, robot, chain.weather_at(robot).table["temp_air"].to_numpy())
     coldest_c, hottest_c = (float(extreme) + robot.battery.box_rise_c for extreme in (air_c.min(), air_c.max()))
-    cutoff_v = float(np.interp(pack.cutoff_soc, pack.curve.soc, pack.curve.rest_v))
+    cutoff_v, full_v = (float(np.interp(soc, pack.curve.soc, pack.curve.rest_v)) for soc in (pack.cutoff_soc, 1.0))
     return rail_cautions(
         robot,
         lowest_v=cutoff_v,
-        highest_v=min(pack.cells * pack.kind.top_v, CHARGING_OVER_REST * float(pack.curve.rest_v[-1])),
+        highest_v=pack.cells * top_v if np.isfinite(top_v := pack.kind.top_v) else CHARGING_OVER_REST * full_v,
         resistance_ohm=resistance_ohm(pack, robot.battery.capacity_ah, temp_c=max(coldest_c, -20.0)),
         soc_nodes=pack.curve.soc,
         rest_v_nodes=pack.curve.rest_v,
