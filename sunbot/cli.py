@@ -5,6 +5,7 @@ from __future__ import annotations
 import contextlib
 import errno
 import os
+import shlex
 import signal
 import sys
 import threading
@@ -263,13 +264,15 @@ def new(folder: Path, example: str | None, **place: Any) -> None:
     """Start FOLDER with a commented site and robot file, for a place on land or from an example."""
     from .report import starter, starts
 
+    start = starts.Start(**place)
     if example is not None:
+        starts.refuse_beside_example(start)
         written = starter.copy_example(example, folder)
     else:
-        written = starter.write_files(folder, starts.files_of(starts.Start(**place), notes=_note))
+        written = starter.write_files(folder, starts.files_of(start, notes=_note))
     for path in written:
         click.echo(f"wrote {path}")
-    click.echo(f"next: sunbot check {folder / 'robot.toml'}")
+    click.echo(f"next: sunbot check {shlex.quote(str(folder / 'robot.toml'))}")
 
 
 @cli.command()

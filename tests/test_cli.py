@@ -5,6 +5,7 @@ from __future__ import annotations
 import errno
 import json
 import os
+import shlex
 import signal
 import subprocess
 import sys
@@ -164,6 +165,16 @@ def test_wrong_input_is_answered_in_words(folder, kind):
         (("new", "{folder}/new"), "--lat"),
         (("new", "{folder}/new", "--lat", 40, "--lon", -40), "--from-weather"),
         (("new", "{folder}/new", "--example", "moon-base"), "orchard-row"),
+        (("new", "{folder}/new", "--example", "mud-flat", "--lat", 47, "--name", "x"), "no use for --lat, --name"),
+        (("new", "{folder}/new", "--lat", 47, "--lon", 8, "--time-zone", "CET+1"), '--time-zone: "CET+1" is no time'),
+        (("new", "{folder}/new", "--lat", 47, "--lon", 8, "--time-zone", "Asia/Tokyo"), "--lon: 8 does not fit"),
+        (("new", "{folder}/new", "--lat", 47, "--lon", 8, "--altitude-m", 90000), "--altitude-m: 90000.0 is outside"),
+        (("new", "{folder}/new", "--lat", 47, "--lon", 8, "--name", ""), "--name: is empty"),
+        (("new", "{folder}/new", "--from-weather", "no.csv"), "--from-weather no.csv: there is no file"),
+        (
+            ("new", "{folder}/new", "--from-weather", "pvlib-data:723170TYA.CSV", "--time-zone", "Asia/Tokyo"),
+            "--lon: -79.95 does not fit the clock of Asia/Tokyo",
+        ),
         (("schema", "rover"), "robot"),
     ],
 )
@@ -277,6 +288,21 @@ def test_new_from_weather_takes_the_climate_of_a_file(tmp_path):
     sky = run("sky", tmp_path / "w" / "site.toml", "--years", 2)
     assert sky.exit_code == 0, sky.output
     assert "every check passed" in sky.stdout
+
+
+def test_new_names_the_next_command_so_that_a_shell_can_run_it(tmp_path):
+    """A folder with a blank in its name is one word for the shell."""
+    done = run("new", tmp_path / "my place", "--example", "mud-flat")
+    words = shlex.split(done.stdout.splitlines()[-1])
+    assert words == ["next:", "sunbot", "check", str(tmp_path / "my place" / "robot.toml")]
+
+
+def test_new_from_a_table_of_ones_own_says_how_else(tmp_path):
+    """Which instant a stamp names must stand in a site file, which does not exist yet."""
+    (tmp_path / "own.csv").write_text("time,ghi\n2020-01-01T00:00Z,0\n2020-01-01T01:00Z,0\n")
+    done = run("new", tmp_path / "n", "--from-weather", tmp_path / "own.csv", "--lat", 47, "--lon", 8)
+    assert done.exit_code == 2
+    assert "must say label. Write --lat and --lon instead" in done.stderr
 
 
 def test_schema_is_json():

@@ -12,6 +12,7 @@ from pydantic_core import ErrorDetails
 from ..errors import Fault
 from . import keys
 from .checks import MONTHS
+from .chemistries import REST_VOLTAGES, chemistries_in_words, chemistry_meant
 from .fields import Part, Path
 
 Data = dict[str, Any]
@@ -214,12 +215,23 @@ def _hint(error: ErrorDetails, name: str, field: FieldInfo, rest: Path) -> str:
         return f"{value.strip()} without quotes"
     if error["type"] == "string_too_long":
         return f"at most {error['ctx']['max_length']} letters"
+    if error["type"] == "literal_error" and name == "chemistry":
+        return _chemistry(value)
     if error["type"] == "literal_error" and isinstance(value, str):
         words = keys.choices(field, rest)
         near = difflib.get_close_matches(value.lower(), words, n=1, cutoff=0.5)
         listed = ", ".join(keys.shown(word) for word in words)
         return f"{keys.shown(near[0])}; the choices are {listed}" if near else f"one of {listed}"
     return ""
+
+
+def _chemistry(value: Any) -> str:
+    """Never by spelling alone: "lipo" looks like lifepo4, which is charged otherwise, and a wrong guess can burn."""
+    meant = chemistry_meant(value) if isinstance(value, str) else None
+    if meant is None:
+        return f"what is printed on the cells, one of {chemistries_in_words()}"
+    cell_v = REST_VOLTAGES[meant].nominal_v
+    return f"{keys.shown(meant)}, if these are {cell_v:.1f} V cells; the choices are {chemistries_in_words()}"
 
 
 def _is_number(text: str) -> bool:

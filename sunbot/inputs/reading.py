@@ -52,6 +52,20 @@ def load_site(path: str | Path) -> Site:
     return with_side_files(site, folder, file=path.name).model_copy(update={"folder": str(folder)})
 
 
+def site_of(said: Data, *, file: str) -> Site:
+    """The site of keys that stand in no file yet; ``file`` is what messages call their home.
+
+    Raises
+    ------
+    InputError
+        With every mistake in them.
+    """
+    site, faults = _checked(Site, said, file=file)
+    if site is None or faults:
+        raise InputError(faults)
+    return site
+
+
 def load_robot(path: str | Path, *, site: str | Path | Site | None = None) -> Robot:
     """Read and check a robot file and the site file it names.
 
