@@ -336,6 +336,32 @@ def test_another_source_on_the_command_line_leaves_no_file_behind(folder):
     assert Site.model_validate(aside.model_dump(by_alias=True)) == aside
 
 
+LIGHT = [1.1, 1.9, 3.1, 4.3, 5.2, 5.8, 5.9, 5.0, 3.7, 2.2, 1.2, 0.9]
+DAYS = [31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31]
+SLIPS = {
+    "MJ": ("ghi_kwh_m2_day", [x * 3.6 for x in LIGHT], "each divided by 3.6 if these are MJ/m2 a day"),
+    "sums": ("ghi_kwh_m2_day", [x * d for x, d in zip(LIGHT, DAYS, strict=True)], "days of its month"),
+    "Wh": ("ghi_kwh_m2_day", [x * 1000 for x in LIGHT], "each divided by 1000 if these are Wh"),
+    "kelvin": ("temp_max_c", [280.0 + x for x in LIGHT], "each less 273.15 if these are kelvin"),
+    "Fahrenheit": ("temp_max_c", [70.0 + x for x in LIGHT], "degrees Fahrenheit"),
+    "per cent": ("year_to_year", [15.0] * 12, "each divided by 100 if these are per cent"),
+    "text": ("temp_max_c", ["3,5"] * 12, "one number for all months or a list of twelve"),
+    "commas": ("ghi_kwh_m2_day", [1, 5] * 12, "twelve with decimal commas"),
+}
+
+
+@pytest.mark.parametrize(("key", "values", "said"), SLIPS.values(), ids=SLIPS)
+def test_a_list_in_another_unit_is_one_mistake_that_names_the_unit(folder, key, values, said):
+    """Twelve values off by one factor are told once, on one line."""
+    text = re.sub(rf"^{key} = .*\n", "", SITE, flags=re.M)
+    (folder / "site.toml").write_text(f"{text}{key} = {values}\n".replace("'", '"'), encoding="utf-8")
+    with pytest.raises(InputError) as caught:
+        load_site(folder / "site.toml")
+    (fault,) = caught.value.faults
+    assert fault.where == f"site.toml: climate: {key}"
+    assert said in fault.instead
+
+
 def test_a_panel_held_at_the_battery_needs_its_voltage(folder):
     """Without vmp_v a pwm or direct controller has nothing to go by; mppt has."""
     text = ROBOT.replace("vmp_v = 18.0\n", "")
@@ -494,13 +520,39 @@ def test_large_but_possible_sizes_are_believed(folder):
         (b"", "is empty"),
         (b"  \n\n", "is empty"),
         (b"# only words\n", "holds no keys"),
-        (b'name = "a"\nlatitude = 4,7\n', r"is no TOML in line 2 .*latitude = 4,7"),
-        (b'name = "a"\nname = "b"\n', r"is no TOML in line 2 \(cannot overwrite a value\)"),
+        (
+            b'name = "a"\nlatitude = 4,7  # deg\n',
+            r"is no TOML in line 2: a decimal comma in latitude = 4,7  # deg\. Write a decimal point: latitude = 4\.7\.$",
+        ),
+        (
+            b'name = "a"\nname = "b"\n',
+            r'is no TOML in line 2: the key name stands twice in its table: name = "b"\. Write',
+        ),
+        (b"[climate]\na = 1\n[climate]\n", r"is no TOML in line 3: the table climate stands twice: \[climate\]\. "),
+        (
+            b"watts = 40 W\n",
+            r"is no TOML in line 1: a unit behind the number in watts = 40 W\. Write .*: watts = 40\.$",
+        ),
+        ("name = \u201ca\u201d\n".encode(), "is no TOML in line 1: curly quotes in name = .* Write straight quotes"),
+        (b'name = "a" "\\"\n', r'is no TOML in line 1 \(expected.*\): name = "a" "\\"\. Write key = value'),
         (b'name = "a"\n# caf\xe9\n', r"is not UTF-8 text \(byte 0xe9 in line 2\)"),
         (b"a = " + b"[" * 50_000, "holds lists or tables nested too deep"),
         (b"latitude = " + b"9" * 10_000, "holds a number too long to read"),
     ],
-    ids=["empty", "blank", "comments", "comma", "twice", "latin-1", "deep", "digits"],
+    ids=[
+        "empty",
+        "blank",
+        "comments",
+        "comma",
+        "twice",
+        "table",
+        "unit",
+        "curly",
+        "words",
+        "latin-1",
+        "deep",
+        "digits",
+    ],
 )
 def test_what_is_no_toml_is_refused_with_the_line(folder, which, content, said):
     """A file that cannot be parsed is named, with the line where there is one."""
