@@ -80,16 +80,21 @@ class Sizes(click.ParamType):  # type: ignore[type-arg]  # generic since click 8
 
 
 class Range(click.ParamType):  # type: ignore[type-arg]
-    """LOW:HIGH, two numbers above 0, the smaller first."""
+    """LOW:HIGH, two capacities above 0 and as batteries have them, the smaller first."""
 
     name = "range"
     example = "LOW:HIGH, the smaller first, e.g. 5:60"
 
     def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> tuple[float, float]:
+        from .inputs.sizes import MOST_AH
+
         where = _where(param, value)
         low, high = _numbers(value.split(":"), where, self.example, count=2)
         if high <= low:
             raise InputError(Fault(where, f"{high:g} is not above {low:g}", self.example))
+        if high > MOST_AH:
+            milli = f"{low / 1000:g}:{high / 1000:g} if these are milliampere-hours"
+            raise InputError(Fault(where, f"up to {MOST_AH:g} Ah are believed", milli))
         return low, high
 
 

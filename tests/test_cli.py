@@ -161,6 +161,7 @@ def test_wrong_input_is_answered_in_words(folder, kind):
         (("check", "{robot}", "--plot", "out.gif"), ".png"),
         (("check", "{robot}", "--csv", "no/such/folder/out.csv"), "no folder"),
         (("pick", "{robot}", "--watts", "ten:20:5"), "LOW:HIGH:STEP"),
+        (("pick", "{robot}", "--battery-ah", "5000:60000"), "5:60 if these are milliampere-hours"),
         (("new", "{folder}", "--lat", 40, "--lon", 10), "site.toml"),
         (("new", "{folder}/new"), "--lat"),
         (("new", "{folder}/new", "--lat", 40, "--lon", -40), "--from-weather"),

@@ -236,6 +236,8 @@ def _hint(error: ErrorDetails, name: str, field: FieldInfo, rest: Path) -> str:
     value = error["input"]
     if error["type"] in ("float_type", "int_type") and isinstance(value, str) and _is_number(value):
         return f"{value.strip()} without quotes"
+    if error["type"] == "less_than_equal" and name == "length_m":
+        return f"metres: {value / 1000:g} if these were millimetres"
     if error["type"] == "too_long" and keys.is_twelve(field) and len(value) == 24:
         return "twelve numbers with decimal points; these look like twelve with decimal commas"
     if error["type"] == "string_too_long":

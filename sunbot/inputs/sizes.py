@@ -24,6 +24,8 @@ LONG_WIRE_M = 20.0
 """From here on a length of wire on a robot may have been meant in millimetres; common practice."""
 PACK_VOLTS = (12, 24, 36, 48)
 """What packs are called by; common practice."""
+CLASS_12_OPEN_V = 22.0
+"""Open-circuit voltage of a panel made for 12 V batteries; common practice."""
 OPEN_OVER_VMP = 1.25
 """Open-circuit voltage over that at maximum power, on the high side of data sheets; common practice."""
 
@@ -60,18 +62,21 @@ def _too_large(at: Path, value: float | None, most: float, *, unit: str, of: str
 def robot(robot: Robot) -> Iterator[Problem]:
     """Wires that could carry nothing, and cells counted in volts."""
     for number, panel in enumerate(robot.panels):
-        yield from _panel_wire(panel, number)
+        yield from _panel_wire(panel, number, robot.battery)
     for number, rail in enumerate(robot.rails):
         yield from _rail_wire(robot, rail, number)
     yield from _cells(robot)
 
 
-def _panel_wire(panel: Panel, number: int) -> Iterator[Problem]:
-    if panel.wire is not None and panel.vmp_v is not None:
-        volts = panel.vmp_v * panel.in_series
-        yield from _drop(
-            panel.wire, ("panel", number, "wire"), volts, panel.total_watts / volts, of="the panel's", at="in full sun"
-        )
+def _panel_wire(panel: Panel, number: int, pack: Battery) -> Iterator[Problem]:
+    if panel.wire is None:
+        return
+    vmp_v = panel.vmp_v or (panel.watts / panel.imp_a if panel.imp_a else None)
+    string_v = vmp_v and vmp_v * panel.in_series
+    # Where the sheet is silent, a string that clears the full pack, as one that charges it must.
+    volts = string_v or (_open_v(panel) or max(CLASS_12_OPEN_V, 1.6 * pack.highest_v)) / OPEN_OVER_VMP
+    where: Path = ("panel", number, "wire")
+    yield from _drop(panel.wire, where, volts, panel.total_watts / volts, of="the panel's", at="in full sun")
 
 
 def _rail_wire(robot: Robot, rail: Rail, number: int) -> Iterator[Problem]:
@@ -95,7 +100,11 @@ def _drop(wire: Wire, path: Path, volts: float, amps: float, *, of: str, at: str
     if wire.length_m >= LONG_WIRE_M:
         remedy = f"{wire.length_m / 1000:g} if these were millimetres; else {remedy}"
     home = path[:-1]
-    judged = ((*path, "area_mm2"), *((*home, name) for name in ("watts", "vmp_v", "volts", "in_series")), ("load",))
+    judged = (
+        (*path, "area_mm2"),
+        *((*home, name) for name in ("watts", "vmp_v", "imp_a", "voc_v", "volts", "in_series")),
+        ("load",),
+    )
     yield Problem((*path, "length_m"), wrong, remedy, judged)
 
 

@@ -481,6 +481,16 @@ WRONG_SIZES = {
         # 2 x 1000 m x 13.3 ohm/km (IEC 60228, class 5, 1.5 mm2) x 2.22 A = 59.1 V
         r"panel 1 .*: wire: length_m: 1000 m of 1\.5 mm2.* would take 59\.1 V of the panel.s 18 V.* Write 1 if",
     ),
+    "panel wire in mm, no data sheet": (
+        "vmp_v = 18.0\nimp_a = 2.22\nvoc_v = 21.8\nisc_a = 2.35",
+        "wire = { length_m = 800 }",
+        r"wire: length_m: 800 m of 1\.5 mm2.* Write 0\.8 if these were millimetres",
+    ),
+    "panel wire in mm, beyond any wire": (
+        "tilt_deg = 10",
+        "tilt_deg = 10\nwire = { length_m = 1500 }",
+        r"wire: length_m: 1500 is outside 0 to 1000\. Write metres: 1\.5 if these were millimetres",
+    ),
     "rail wire in mm": (
         "volts = 5",
         "volts = 5\nwire = { length_m = 300, area_mm2 = 0.5 }",
