@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import contextlib
+import errno
 import os
+import shlex
 import signal
 import sys
 import threading
@@ -13,7 +16,7 @@ from typing import TYPE_CHECKING, Any, TypeVar
 import click
 
 from . import __version__
-from .errors import Fault, InputError
+from .errors import Fault, InputError, UndeliveredError
 
 if TYPE_CHECKING:
     from .inputs import Robot, Site
@@ -25,6 +28,8 @@ INTERRUPTED = 130
 INTERRUPTED_NOTE = "\nInterrupted: nothing was written."
 UNWOUND_S = 0.6
 """How long an interrupted command may take to unwind, before it is ended by force."""
+STDOUT_TROUBLE = (errno.ENOSPC, errno.EDQUOT, errno.EFBIG, errno.EIO, errno.EBADF)
+"""What an error without a file name says when it is stdout that takes nothing; files report theirs as wrong input."""
 MOST_SIZES = 200
 ROBOT_OR_SITE_FILE = click.Path(path_type=Path)
 OUT_FILE = click.Path(dir_okay=False, path_type=Path)
@@ -45,6 +50,9 @@ class Commands(click.Group):
     def invoke(self, ctx: click.Context) -> Any:
         try:
             return super().invoke(ctx)
+        except UndeliveredError as error:
+            click.echo(error.answer, nl=False)
+            raise WrongInput(str(error)) from error
         except InputError as error:
             raise WrongInput(str(error)) from error
         except KeyboardInterrupt as error:
@@ -72,16 +80,21 @@ class Sizes(click.ParamType):  # type: ignore[type-arg]  # generic since click 8
 
 
 class Range(click.ParamType):  # type: ignore[type-arg]
-    """LOW:HIGH, two numbers above 0, the smaller first."""
+    """LOW:HIGH, two capacities above 0 and as batteries have them, the smaller first."""
 
     name = "range"
     example = "LOW:HIGH, the smaller first, e.g. 5:60"
 
     def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> tuple[float, float]:
+        from .inputs.sizes import MOST_AH
+
         where = _where(param, value)
         low, high = _numbers(value.split(":"), where, self.example, count=2)
         if high <= low:
             raise InputError(Fault(where, f"{high:g} is not above {low:g}", self.example))
+        if high > MOST_AH:
+            milli = f"{low / 1000:g}:{high / 1000:g} if these are milliampere-hours"
+            raise InputError(Fault(where, f"up to {MOST_AH:g} Ah are believed", milli))
         return low, high
 
 
@@ -118,23 +131,31 @@ def weather_options(command: F) -> F:
     return command
 
 
-def output_options(command: F) -> F:
-    """Where the answer goes."""
-    for option in (
-        click.option("--plot", type=OUT_FILE, metavar="FILE", help="Also draw it (.png, .svg or .pdf)."),
-        click.option("--csv", type=OUT_FILE, metavar="FILE", help="Also write the steps behind it."),
-        click.option("--json", "as_json", is_flag=True, help="Print one JSON document instead of text."),
-    ):
-        command = option(command)
-    return command
+def output_options(rows: str) -> Callable[[F], F]:
+    """Where the answer goes; ``rows``: what the CSV holds."""
+
+    def with_options(command: F) -> F:
+        for option in (
+            click.option("--plot", type=OUT_FILE, metavar="FILE", help="Also draw it (.png, .svg or .pdf)."),
+            click.option("--csv", type=OUT_FILE, metavar="FILE", help=f"Also write {rows}."),
+            click.option("--json", "as_json", is_flag=True, help="Print one JSON document instead of text."),
+        ):
+            command = option(command)
+        return command
+
+    return with_options
 
 
-def robot_options(command: F) -> F:
+def robot_options(rows: str) -> Callable[[F], F]:
     """What every question about a robot can be asked with: its file, another site, the weather, the outputs."""
     site = "Use this site instead of the robot file's."
-    command = weather_options(output_options(command))
-    command = click.option("--site", type=ROBOT_OR_SITE_FILE, metavar="FILE", help=site)(command)
-    return click.argument("robot", type=ROBOT_OR_SITE_FILE)(command)
+
+    def with_options(command: F) -> F:
+        command = weather_options(output_options(rows)(command))
+        command = click.option("--site", type=ROBOT_OR_SITE_FILE, metavar="FILE", help=site)(command)
+        return click.argument("robot", type=ROBOT_OR_SITE_FILE)(command)
+
+    return with_options
 
 
 @click.group(cls=Commands, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
@@ -147,7 +168,7 @@ def cli() -> None:
 
 
 @cli.command()
-@robot_options
+@robot_options("the steps behind it")
 @click.pass_context
 def check(
     ctx: click.Context,
@@ -162,10 +183,11 @@ def check(
 ) -> None:
     """Does its panel keep the robot of ROBOT alive, how sure is that, and why not?"""
     from . import report, studies
+    from .inputs import files_behind
 
     outputs = report.Outputs(as_json, csv, plot)
-    outputs.ready()
     filed = _robot(robot, site, weather)
+    outputs.ready(files_behind(robot, site=site, weather=weather))
     result = studies.check(filed, years=years, seed=seed, trace=csv is not None or plot is not None)
     click.echo(report.deliver_check(result, outputs, notes=_note), nl=False)
     ctx.exit(0 if result.met else TARGET_NOT_MET)
@@ -175,7 +197,7 @@ def check(
 @click.option("--watts", type=Sizes(), metavar="LOW:HIGH:STEP", help="Panels to try, e.g. 10:120:10 or 20,40,60.")
 @click.option("--battery-ah", type=Range(), metavar="LOW:HIGH", help="Batteries to try, e.g. 5:60.")
 @click.option("--controllers", is_flag=True, help="Compare direct, PWM and MPPT.")
-@robot_options
+@robot_options("the pairs of panel and battery tried")
 @click.pass_context
 def pick(
     ctx: click.Context,
@@ -193,10 +215,11 @@ def pick(
 ) -> None:
     """Which panel, with which battery, is the smallest that keeps the robot of ROBOT alive?"""
     from . import report, studies
+    from .inputs import files_behind
 
     outputs = report.Outputs(as_json, csv, plot)
-    outputs.ready()
     filed = _robot(robot, site, weather)
+    outputs.ready(files_behind(robot, site=site, weather=weather))
     also = [name for name, asked in (("map", plot is not None), ("controllers", controllers)) if asked]
     with report.Progress(sys.stderr) as progress:
         result = studies.pick(
@@ -207,7 +230,7 @@ def pick(
 
 
 @cli.command()
-@robot_options
+@robot_options("the steps of the worst fortnight")
 @click.pass_context
 def season(
     ctx: click.Context,
@@ -220,15 +243,13 @@ def season(
     csv: Path | None,
     plot: Path | None,
 ) -> None:
-    """When is it darkest for the robot of ROBOT, how much work does each month afford, what would move the answer?
-
-    The steps that --csv writes are those of the worst fortnight.
-    """
+    """When is it darkest for the robot of ROBOT, how much work does each month afford, what would move the answer?"""
     from . import report, studies
+    from .inputs import files_behind
 
     outputs = report.Outputs(as_json, csv, plot)
-    outputs.ready()
     filed = _robot(robot, site, weather)
+    outputs.ready(files_behind(robot, site=site, weather=weather))
     with report.Progress(sys.stderr) as progress:
         result = studies.season(filed, years=years, seed=seed, watcher=progress)
     click.echo(report.deliver_season(result, outputs, notes=_note), nl=False)
@@ -248,19 +269,21 @@ def new(folder: Path, example: str | None, **place: Any) -> None:
     """Start FOLDER with a commented site and robot file, for a place on land or from an example."""
     from .report import starter, starts
 
+    start = starts.Start(**place)
     if example is not None:
+        starts.refuse_beside_example(start)
         written = starter.copy_example(example, folder)
     else:
-        written = starter.write_files(folder, starts.files_of(starts.Start(**place), notes=_note))
+        written = starter.write_files(folder, starts.files_of(start, notes=_note))
     for path in written:
         click.echo(f"wrote {path}")
-    click.echo(f"next: sunbot check {folder / 'robot.toml'}")
+    click.echo(f"next: sunbot check {shlex.quote(str(folder / 'robot.toml'))}")
 
 
 @cli.command()
 @click.argument("site", type=ROBOT_OR_SITE_FILE)
 @weather_options
-@output_options
+@output_options("the weather behind it, step by step")
 @click.pass_context
 def sky(
     ctx: click.Context,
@@ -274,12 +297,13 @@ def sky(
 ) -> None:
     """What does the place of SITE offer, and is the weather file believable?"""
     from . import report, studies
-    from .inputs import load_site
+    from .inputs import files_behind, load_site
 
     outputs = report.Outputs(as_json, csv, plot)
-    outputs.ready()
     place = load_site(site)
-    result = studies.survey(place if weather is None else _with_weather(place, weather), years=years, seed=seed)
+    place = place if weather is None else _with_weather(place, weather)
+    outputs.ready(files_behind(site, weather=weather))
+    result = studies.survey(place, years=years, seed=seed)
     click.echo(report.deliver_sky(result, outputs, notes=_note), nl=False)
     ctx.exit(0 if result.met else TARGET_NOT_MET)
 
@@ -330,9 +354,23 @@ def main() -> None:
     signal.signal(signal.SIGINT, _interrupted)
     try:
         cli(prog_name="sunbot")
+    except OSError as error:
+        if error.errno not in STDOUT_TROUBLE or error.filename is not None:
+            raise
+        _drop_stdout()
+        with contextlib.suppress(OSError):
+            reason = (error.strerror or str(error)).lower()
+            click.echo(f"stdout: the answer cannot be written ({reason}). Write it to a place with room.", err=True)
+        sys.exit(WrongInput.exit_code)
     except SystemExit as end:
         if end.code == INTERRUPTED:
             # Threads still at work would keep the process for as long as they last.
             sys.stderr.flush()
             os._exit(INTERRUPTED)
         raise
+
+
+def _drop_stdout() -> None:
+    """Nothing more can be written there; what waits is let go, or Python would complain again at its end."""
+    with contextlib.suppress(OSError, ValueError):
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())

@@ -29,3 +29,11 @@ class InputError(ValueError):
     def __init__(self, faults: Fault | Iterable[Fault]) -> None:
         self.faults: tuple[Fault, ...] = (faults,) if isinstance(faults, Fault) else tuple(faults)
         super().__init__("\n".join(str(fault) for fault in self.faults))
+
+
+class UndeliveredError(InputError):
+    """A file could not be written after the work was done; ``answer`` is what belongs on stdout all the same."""
+
+    def __init__(self, faults: Fault | Iterable[Fault], *, answer: str) -> None:
+        self.answer = answer
+        super().__init__(faults)

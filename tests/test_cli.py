@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import errno
 import json
 import os
+import shlex
 import signal
 import subprocess
 import sys
@@ -159,10 +161,21 @@ def test_wrong_input_is_answered_in_words(folder, kind):
         (("check", "{robot}", "--plot", "out.gif"), ".png"),
         (("check", "{robot}", "--csv", "no/such/folder/out.csv"), "no folder"),
         (("pick", "{robot}", "--watts", "ten:20:5"), "LOW:HIGH:STEP"),
+        (("pick", "{robot}", "--battery-ah", "5000:60000"), "5:60 if these are milliampere-hours"),
         (("new", "{folder}", "--lat", 40, "--lon", 10), "site.toml"),
         (("new", "{folder}/new"), "--lat"),
         (("new", "{folder}/new", "--lat", 40, "--lon", -40), "--from-weather"),
         (("new", "{folder}/new", "--example", "moon-base"), "orchard-row"),
+        (("new", "{folder}/new", "--example", "mud-flat", "--lat", 47, "--name", "x"), "no use for --lat, --name"),
+        (("new", "{folder}/new", "--lat", 47, "--lon", 8, "--time-zone", "CET+1"), '--time-zone: "CET+1" is no time'),
+        (("new", "{folder}/new", "--lat", 47, "--lon", 8, "--time-zone", "Asia/Tokyo"), "--lon: 8 does not fit"),
+        (("new", "{folder}/new", "--lat", 47, "--lon", 8, "--altitude-m", 90000), "--altitude-m: 90000.0 is outside"),
+        (("new", "{folder}/new", "--lat", 47, "--lon", 8, "--name", ""), "--name: is empty"),
+        (("new", "{folder}/new", "--from-weather", "no.csv"), "--from-weather no.csv: there is no file"),
+        (
+            ("new", "{folder}/new", "--from-weather", "pvlib-data:723170TYA.CSV", "--time-zone", "Asia/Tokyo"),
+            "--lon: -79.95 does not fit the clock of Asia/Tokyo",
+        ),
         (("schema", "rover"), "robot"),
     ],
 )
@@ -184,6 +197,69 @@ def test_csv_and_plot_are_written_when_asked_for(folder):
     assert len(lines) == 8761
     assert (folder / "a.png").read_bytes().startswith(b"\x89PNG")
     assert not list(folder.glob(".*"))
+
+
+@pytest.mark.parametrize("named", ["robot.toml", "site.toml", "skyline.csv", "tower.txt", "other.toml"])
+def test_no_file_the_question_is_read_from_is_overwritten(folder, named):
+    """Robot, site, horizon and weather file, and the site of --site: exit 2 before any work, the file untouched."""
+    (folder / "skyline.csv").write_text("azimuth,elevation\n0,3\n")
+    (folder / "tower.txt").write_text("time,ghi\n")
+    weather = '[weather]\nsource = "file"\nfile = "tower.txt"\n\n[climate]'
+    (folder / "site.toml").write_text(
+        SITE.replace("snow_days = 0", 'horizon_file = "skyline.csv"').replace("[climate]", weather)
+    )
+    (folder / "other.toml").write_text(SITE)
+    before = {path.name: path.read_bytes() for path in folder.iterdir()}
+    other = ["--site", folder / "other.toml"] if named == "other.toml" else []
+    done = run("check", folder / "robot.toml", *other, "--csv", folder / named)
+    assert done.exit_code == 2, done.output
+    assert "is a file this question is read from" in done.stderr
+    assert {path.name: path.read_bytes() for path in folder.iterdir()} == before
+
+
+def test_an_answer_is_printed_although_its_file_could_not_be_written(folder, monkeypatch):
+    """The disk is full at the end: the answer on stdout, the reason on stderr, exit 2."""
+    from sunbot import writing
+
+    def refuse(*_):
+        raise OSError(errno.ENOSPC, "No space left on device")
+
+    monkeypatch.setattr(writing.os, "replace", refuse)
+    done = run("check", folder / "robot.toml", "--years", 1, "--csv", folder / "a.csv")
+    assert done.exit_code == 2
+    assert "Invented box" in done.stdout
+    assert "a.csv: cannot be written (No space left on device)" in done.stderr
+    assert not (folder / "a.csv").exists()
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="only Linux has a device that is always full")
+@pytest.mark.parametrize("buffered", [True, False])
+@pytest.mark.parametrize(
+    "words", ["check {robot} --years 1", "schema robot", "new {folder}/n --example mud-flat", "-h"]
+)
+def test_a_full_stdout_is_told_in_one_line(folder, words, buffered):
+    """Exit 2, which is no verdict, and no traceback."""
+    command = words.format(robot=folder / "robot.toml", folder=folder)
+    done = subprocess.run(
+        ["bash", "-c", f"'{sys.executable}' -m sunbot {command} > /dev/full"],
+        capture_output=True,
+        text=True,
+        check=False,
+        env={
+            **{name: value for name, value in os.environ.items() if name != "PYTHONUNBUFFERED"},
+            **({} if buffered else {"PYTHONUNBUFFERED": "1"}),
+            "PYTHONPATH": os.pathsep.join(path for path in sys.path if path),
+        },
+    )
+    assert done.returncode == 2, done.stderr
+    assert done.stderr.count("\n") == 1, done.stderr
+    assert "stdout: the answer cannot be written (no space left on device)" in done.stderr
+
+
+def test_help_says_what_each_csv_holds():
+    """The rows differ by question."""
+    for command, rows in (("check", "steps behind it"), ("pick", "pairs of panel"), ("season", "fortnight")):
+        assert rows in " ".join(run(command, "--help").stdout.split())
 
 
 def test_new_writes_a_folder_that_runs_as_it_is(tmp_path):
@@ -213,6 +289,21 @@ def test_new_from_weather_takes_the_climate_of_a_file(tmp_path):
     sky = run("sky", tmp_path / "w" / "site.toml", "--years", 2)
     assert sky.exit_code == 0, sky.output
     assert "every check passed" in sky.stdout
+
+
+def test_new_names_the_next_command_so_that_a_shell_can_run_it(tmp_path):
+    """A folder with a blank in its name is one word for the shell."""
+    done = run("new", tmp_path / "my place", "--example", "mud-flat")
+    words = shlex.split(done.stdout.splitlines()[-1])
+    assert words == ["next:", "sunbot", "check", str(tmp_path / "my place" / "robot.toml")]
+
+
+def test_new_from_a_table_of_ones_own_says_how_else(tmp_path):
+    """Which instant a stamp names must stand in a site file, which does not exist yet."""
+    (tmp_path / "own.csv").write_text("time,ghi\n2020-01-01T00:00Z,0\n2020-01-01T01:00Z,0\n")
+    done = run("new", tmp_path / "n", "--from-weather", tmp_path / "own.csv", "--lat", 47, "--lon", 8)
+    assert done.exit_code == 2
+    assert "must say label. Write --lat and --lon instead" in done.stderr
 
 
 def test_schema_is_json():

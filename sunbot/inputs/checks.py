@@ -8,6 +8,7 @@ from collections.abc import Iterator, Sequence
 from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
+from . import sizes
 from .fields import Path, Problem
 
 if TYPE_CHECKING:
@@ -63,6 +64,7 @@ def month_and_day(day: str) -> tuple[int, int]:
 
 def panel(panel: Panel) -> Iterator[Problem]:
     """The data sheet is one that a panel can have."""
+    yield from sizes.panel(panel)
     for inner, outer in (("vmp_v", "voc_v"), ("imp_a", "isc_a")):
         low, high = getattr(panel, inner), getattr(panel, outer)
         if low is not None and high is not None and low >= high:
@@ -105,6 +107,7 @@ def controller(controller: Controller) -> Iterator[Problem]:
 
 def battery(battery: Battery) -> Iterator[Problem]:
     """Thresholds and temperature window in order."""
+    yield from sizes.battery(battery)
     if battery.cutoff_soc >= battery.restart_soc:
         yield Problem(
             ("restart_soc",),
@@ -129,6 +132,7 @@ def rail(rail: Rail) -> Iterator[Problem]:
 
 def load(load: Load) -> Iterator[Problem]:
     """One way to say the power, hours that run forward, lists without gaps or doubles."""
+    yield from sizes.load(load)
     given = [name for name in ("watts", "amps", "traction") if getattr(load, name) is not None]
     if not given:
         yield Problem(
@@ -202,6 +206,7 @@ def robot(robot: Robot) -> Iterator[Problem]:
     for number, rail in enumerate(robot.rails):
         yield from _rail_voltage(rail, number, robot.battery)
     yield from _panels_on_controller(robot)
+    yield from sizes.robot(robot)
 
 
 def _headings(robot: Robot) -> Iterator[Problem]:

@@ -70,3 +70,30 @@ def rest_voltage_v(chemistry: str, soc: float, cells_in_series: int) -> float:
         if soc <= high:
             return cells_in_series * (low_v + (high_v - low_v) * (soc - low) / (high - low))
     return cells_in_series * curve.cell_v[-1]
+
+
+ALSO_CALLED: dict[str, str] = {
+    **dict.fromkeys(("lfp", "life", "lifepo", "lithiumironphosphate", "ironphosphate"), "lifepo4"),
+    **dict.fromkeys(("lipo", "lithiumpolymer", "lithiumion", "nmc", "linmc", "nca", "lco", "licoo2"), "li-ion"),
+    **dict.fromkeys(
+        ("lead", "pb", "pbacid", "agm", "gel", "sla", "vrla", "flooded", "leadgel", "leadagm"), "lead-acid"
+    ),
+    "nickelmetalhydride": "nimh",
+}
+"""The four chemistries by the letters and digits of other names they go by; common practice. What is not here has no
+near one: cells that are charged as another kind can burn."""
+
+
+def chemistry_meant(name: str) -> str | None:
+    """The chemistry that another name, or another spelling, stands for; None where none does for sure."""
+    plain = _letters(name)
+    return {_letters(known): known for known in REST_VOLTAGES}.get(plain) or ALSO_CALLED.get(plain)
+
+
+def _letters(name: str) -> str:
+    return "".join(sign for sign in name.lower() if sign.isalnum())
+
+
+def chemistries_in_words() -> str:
+    """The choices with the voltage of a cell, by which people know theirs."""
+    return ", ".join(f'"{name}" (cells of {curve.nominal_v:.1f} V)' for name, curve in REST_VOLTAGES.items())

@@ -12,7 +12,9 @@ from pydantic_core import ErrorDetails
 from ..errors import Fault
 from . import keys
 from .checks import MONTHS
+from .chemistries import REST_VOLTAGES, chemistries_in_words, chemistry_meant
 from .fields import Part, Path
+from .monthly import of_twelve
 
 Data = dict[str, Any]
 
@@ -30,11 +32,30 @@ def independent(errors: list[ErrorDetails]) -> list[ErrorDetails]:
 def faults_of(errors: list[ErrorDetails], *, model: type[Part], data: Data, file: str) -> list[tuple[Path, Fault]]:
     """One fault for each mistake, with the path it stands at."""
     found: dict[tuple[Path, str], Fault] = {}
-    for error in errors:
+    for error, alike in _by_list(errors, model, data):
         path = _spot(error, model, data)
         wrong, instead = _words(error, path, model)
+        if len(alike) > 1:
+            path = path[:-1]
+            wrong, instead = of_twelve(alike, wrong, instead, value_at(data, path))
         found.setdefault((path, wrong), Fault(where(file, data, path), wrong, instead))
     return [(path, fault) for (path, _), fault in found.items()]
+
+
+def _by_list(
+    errors: list[ErrorDetails], model: type[Part], data: Data
+) -> Iterator[tuple[ErrorDetails, list[ErrorDetails]]]:
+    """Each mistake once, with all that are alike in the same list of twelve months."""
+    groups: dict[tuple[Path, str], list[ErrorDetails]] = {}
+    for error in errors:
+        path = _spot(error, model, data)
+        _, field, _ = keys.field_at(model, path)
+        monthly = field is not None and keys.is_twelve(field) and isinstance(path[-1], int)
+        # a value above its bound and one below it are one mistake of the list
+        kind = _BOUNDS if error["type"] in _BOUND_TYPES else error["type"]
+        groups.setdefault((path[:-1] if monthly else (*path, len(groups)), kind), []).append(error)
+    for alike in groups.values():
+        yield alike[0], alike
 
 
 def rank(data: Data, path: Path) -> tuple[int, ...]:
@@ -186,6 +207,9 @@ def _table(error: ErrorDetails, field: FieldInfo, rest: Path) -> str:
     return "is a single table" if isinstance(error["input"], dict) else f"{keys.shown(error['input'])} is no list"
 
 
+_BOUNDS = "out of bounds"
+_BOUND_TYPES = ("greater_than", "greater_than_equal", "less_than", "less_than_equal")
+
 _WRONG: dict[str, Callable[[ErrorDetails, FieldInfo, Path], str]] = {
     "missing": _missing,
     "greater_than": _out_of_range,
@@ -212,14 +236,29 @@ def _hint(error: ErrorDetails, name: str, field: FieldInfo, rest: Path) -> str:
     value = error["input"]
     if error["type"] in ("float_type", "int_type") and isinstance(value, str) and _is_number(value):
         return f"{value.strip()} without quotes"
+    if error["type"] == "less_than_equal" and name == "length_m":
+        return f"metres: {value / 1000:g} if these were millimetres"
+    if error["type"] == "too_long" and keys.is_twelve(field) and len(value) == 24:
+        return "twelve numbers with decimal points; these look like twelve with decimal commas"
     if error["type"] == "string_too_long":
         return f"at most {error['ctx']['max_length']} letters"
+    if error["type"] == "literal_error" and name == "chemistry":
+        return _chemistry(value)
     if error["type"] == "literal_error" and isinstance(value, str):
         words = keys.choices(field, rest)
         near = difflib.get_close_matches(value.lower(), words, n=1, cutoff=0.5)
         listed = ", ".join(keys.shown(word) for word in words)
         return f"{keys.shown(near[0])}; the choices are {listed}" if near else f"one of {listed}"
     return ""
+
+
+def _chemistry(value: Any) -> str:
+    """Never by spelling alone: "lipo" looks like lifepo4, which is charged otherwise, and a wrong guess can burn."""
+    meant = chemistry_meant(value) if isinstance(value, str) else None
+    if meant is None:
+        return f"what is printed on the cells, one of {chemistries_in_words()}"
+    cell_v = REST_VOLTAGES[meant].nominal_v
+    return f"{keys.shown(meant)}, if these are {cell_v:.1f} V cells; the choices are {chemistries_in_words()}"
 
 
 def _is_number(text: str) -> bool:

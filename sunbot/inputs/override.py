@@ -23,7 +23,7 @@ def site_with_weather(site: Site, source: str) -> Site:
         ``source`` is neither a source nor a file that exists.
     """
     if source in SOURCES:
-        return _with(site, {"source": source})
+        return _with(site, {"source": source, "file": None})
     if source.startswith(SHIPPED):
         return _with(site, {"source": "file", "file": source})
     path = Path(source)
@@ -35,6 +35,6 @@ def site_with_weather(site: Site, source: str) -> Site:
     return _with(site, {"source": "file", "file": str(path.resolve())})
 
 
-def _with(site: Site, update: dict[str, str]) -> Site:
+def _with(site: Site, update: dict[str, str | None]) -> Site:
     weather: WeatherSource = site.weather.model_copy(update=update)
     return site.model_copy(update={"weather": weather})

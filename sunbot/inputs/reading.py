@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import copy
-import re
 import stat
 import tomllib
 from collections.abc import Iterator
@@ -20,6 +19,7 @@ from .fields import Part
 from .robot import Robot
 from .side_files import with_side_files
 from .site import Site
+from .toml_words import toml_words
 
 MAX_BYTES = 1_000_000
 """A file written by hand stays far below this; anything larger is another file."""
@@ -50,6 +50,20 @@ def load_site(path: str | Path) -> Site:
         raise InputError(faults)
     folder = path.resolve().parent
     return with_side_files(site, folder, file=path.name).model_copy(update={"folder": str(folder)})
+
+
+def site_of(said: Data, *, file: str) -> Site:
+    """The site of keys that stand in no file yet; ``file`` is what messages call their home.
+
+    Raises
+    ------
+    InputError
+        With every mistake in them.
+    """
+    site, faults = _checked(Site, said, file=file)
+    if site is None or faults:
+        raise InputError(faults)
+    return site
 
 
 def load_robot(path: str | Path, *, site: str | Path | Site | None = None) -> Robot:
@@ -117,7 +131,7 @@ def _table_in(path: Path) -> Data:
     try:
         data = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
-        raise InputError(Fault(path.name, *_toml_words(str(error), text))) from None
+        raise InputError(Fault(path.name, *toml_words(str(error), text))) from None
     except RecursionError:
         raise InputError(Fault(path.name, "holds lists or tables nested too deep to read", remedy)) from None
     except ValueError:  # whole numbers of thousands of digits
@@ -160,17 +174,6 @@ def _near_files(path: Path) -> str:
     if near:
         return f"the path of a file that is; in {path.parent} there is {', '.join(near[:8])}"
     return "the path of a file that is; 'sunbot new FOLDER --example NAME' makes one"
-
-
-def _toml_words(message: str, text: str) -> tuple[str, str]:
-    """What tomllib says, with the line it means."""
-    place = re.search(r"line (\d+), column \d+", message)
-    lines = text.splitlines()
-    number = int(place[1]) if place else len(lines)
-    line = lines[number - 1].strip() if 0 < number <= len(lines) else ""
-    reason = re.sub(r"\s*\(at [^)]*\)", "", message)
-    wrong = f"is no TOML in line {number} ({reason[:1].lower()}{reason[1:]}): {keys.shown(line)}"
-    return wrong, 'key = value, with text in quotes, numbers bare and lists in brackets, e.g. name = "Row scout"'
 
 
 def _checked(model: type[AnyPart], data: Data, *, file: str) -> tuple[AnyPart | None, list[Fault]]:

@@ -20,23 +20,14 @@ ROUTE_SOURCES = ("climate", "clear-sky")
 """Weather that can be had for every stop of a route."""
 CLOCK_FROM_SUN_H = 5.0
 """No inhabited place keeps a clock this far from the sun; common practice: western China is 3 h off."""
+CLOCK_BEHIND_SUN_H, CLOCK_AHEAD_OF_SUN_H, CLOCK_AHEAD_IF_SWAPPED_H = 1.25, 3.5, 2.0
+"""For a fixed offset, which is easily given with the wrong sign; common practice: clocks lag the sun by an hour at most
+and lead it by up to three, by over two only in western China and in the summer of western Spain."""
 
 
 def site(site: Site) -> Iterator[Problem]:
     """Time zone, its fit to the longitude, and the order of the horizon."""
-    zone = _zone(site.time_zone)
-    if zone is None:
-        yield Problem(("time_zone",), f'"{site.time_zone}" is no time zone', _zone_remedy(site.time_zone))
-    elif not site.time_zone.startswith(("UTC", "Etc/", "GMT", "Antarctica/")):
-        offset = zone.utcoffset(datetime(2018, 1, 15))
-        clock_h = offset.total_seconds() / 3600 if offset is not None else 0.0
-        if abs((clock_h - site.longitude / 15 + 12) % 24 - 12) > CLOCK_FROM_SUN_H:
-            yield Problem(
-                ("longitude",),
-                f"{site.longitude:g} does not fit the clock of {site.time_zone}, which belongs near {15 * clock_h:g}",
-                "degrees east as positive and degrees west as negative, or the zone of the place",
-                judged=(("time_zone",),),
-            )
+    yield from _clock(site.time_zone, site.longitude)
     yield from _horizon(site.horizon)
     for name, file, given in (
         ("horizon_file", site.horizon_file, site.horizon),
@@ -46,6 +37,43 @@ def site(site: Site) -> Iterator[Problem]:
         if file is not None and given:
             yield Problem((name,), f"stands beside {key}, and both say the same thing", "one of the two", ((key,),))
     yield from _route(site)
+
+
+def _clock(name: str, longitude: float) -> Iterator[Problem]:
+    """A zone that exists and is of the place."""
+    zone = _zone(name)
+    if zone is None:
+        yield Problem(("time_zone",), f'"{name}" is no time zone', _zone_remedy(name))
+        return
+    offset = zone.utcoffset(datetime(2018, 1, 15))
+    clock_h = offset.total_seconds() / 3600 if offset is not None else 0.0
+    ahead_h = (clock_h - longitude / 15 + 12) % 24 - 12
+    if name.startswith("Etc/") and clock_h:
+        yield from _fixed_clock(name, longitude, clock_h=clock_h, ahead_h=ahead_h)
+    elif not name.startswith(("UTC", "Etc/", "GMT", "Antarctica/")) and abs(ahead_h) > CLOCK_FROM_SUN_H:
+        yield Problem(
+            ("longitude",),
+            f"{longitude:g} does not fit the clock of {name}, which belongs near {15 * clock_h:g}",
+            "degrees east as positive and degrees west as negative, or the zone of the place",
+            judged=(("time_zone",),),
+        )
+
+
+def _fixed_clock(name: str, longitude: float, *, clock_h: float, ahead_h: float) -> Iterator[Problem]:
+    """A zone of fixed offset far from the sun of the place, as one with the sign mistaken is."""
+    swapped_h = abs((-clock_h - longitude / 15 + 12) % 24 - 12)
+    mistaken = ahead_h > CLOCK_AHEAD_IF_SWAPPED_H and swapped_h < 1.0
+    if -CLOCK_BEHIND_SUN_H <= ahead_h <= CLOCK_AHEAD_OF_SUN_H and not mistaken:
+        return
+    side = "ahead of" if clock_h > 0 else "behind"
+    wrong = f'"{name}" is {abs(clock_h):g} h {side} UTC (in these names the signs are the other way round), and the sun'
+    wrong += f" at longitude {longitude:g} is {abs(ahead_h):.1f} h {'behind' if ahead_h > 0 else 'ahead of'} that clock"
+    yield Problem(("time_zone",), wrong, f'"{etc_zone(round(longitude / 15))}", or the IANA name', (("longitude",),))
+
+
+def etc_zone(hours: int) -> str:
+    """The zone of whole hours ahead of UTC; these names count west of Greenwich."""
+    return "Etc/GMT" if hours == 0 else f"Etc/GMT{-hours:+d}"
 
 
 def _horizon(horizon: tuple[tuple[float, float], ...]) -> Iterator[Problem]:
@@ -84,7 +112,18 @@ def _zone(name: str) -> ZoneInfo | None:
         return None
 
 
+def is_zone(name: str) -> bool:
+    """Whether there is a time zone of this name."""
+    return _zone(name) is not None
+
+
 def _zone_remedy(name: str) -> str:
+    offset = re.fullmatch(r"[A-Za-z]{0,4}\s*([+-])\s*0?(\d\d?)(?::?00)?", name.strip())
+    if offset and -12 <= (hours := int(offset[1] + offset[2])) <= 14:
+        return (
+            f'"{etc_zone(hours)}" for a clock {abs(hours)} h {"behind" if hours < 0 else "ahead of"} UTC all year '
+            '(in these names the signs are the other way round), or the IANA name of the place, e.g. "Europe/Zurich"'
+        )
     known = sorted(available_timezones())
     wanted = name.strip().lower().replace(" ", "_")
     city = [zone for zone in known if wanted and wanted in {zone.lower(), zone.lower().rsplit("/", 1)[-1]}]
@@ -103,6 +142,9 @@ def weather_source(weather: WeatherSource) -> Iterator[Problem]:
         )
     if not named and weather.file is not None:
         yield Problem(("source",), f'is missing although file is "{weather.file}"', 'source = "file"', (("file",),))
+    if named and weather.source != "file" and weather.file is not None:
+        wrong = f'is "{weather.source}", and file = "{weather.file}" would not be read'
+        yield Problem(("source",), wrong, f'source = "file", or no file beside "{weather.source}"', (("file",),))
     if weather.source == "nasa-power":
         for name in ("first_year", "last_year"):
             if getattr(weather, name) is None:

@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Callable
+import os
+import stat
+from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, Protocol
 
-from ..errors import Fault, InputError
+from ..errors import Fault, InputError, UndeliveredError
+from ..writing import refuse_unwritable
 
 PLOT_FORMATS = (".png", ".svg", ".pdf")
 
@@ -30,18 +33,59 @@ class Outputs:
     csv: Path | None = None
     plot: Path | None = None
 
-    def ready(self) -> None:
-        """Refuse at once what could not be written after minutes of work."""
-        faults = [
-            Fault(str(path), f"there is no folder {path.parent}", "a path in a folder that exists")
-            for path in (self.csv, self.plot)
-            if path is not None and not path.parent.is_dir()
-        ]
+    def ready(self, read: Iterable[Path] = ()) -> None:
+        """Refuse at once what could not, or must not, be written after minutes of work; ``read``: files of the input.
+
+        Raises
+        ------
+        InputError
+            A path that cannot be written to, leads to no ordinary file, to a file of the input, to stdout or to the
+            other output, or that names a format of no plot.
+        """
+        faults: list[Fault] = []
         if self.plot is not None and self.plot.suffix.lower() not in PLOT_FORMATS:
             wrong = "no plot can be written in this format"
             faults.append(Fault(f"--plot {self.plot}", wrong, "a name ending in .png, .svg or .pdf"))
+        elif self.plot is not None:
+            faults += _faults_of_path("--plot", self.plot, read)
+        if self.csv is not None:
+            faults += _faults_of_path("--csv", self.csv, read)
+        if self.csv is not None and self.plot is not None and _same(self.csv, self.plot):
+            faults.append(Fault(f"--plot {self.plot}", "is the file of --csv too", "two names"))
         if faults:
             raise InputError(faults)
+
+
+def _faults_of_path(option: str, path: Path, read: Iterable[Path]) -> Iterator[Fault]:
+    """What speaks against writing to a path."""
+    where = f"{option} {path}"
+    if any(_same(path, one) for one in read):
+        yield Fault(where, "is a file this question is read from, and would be overwritten", "another name")
+    elif path.suffix.lower() == ".toml":
+        yield Fault(where, "has the ending of a robot or site file", f"another name, e.g. {path.stem}.csv")
+    elif _is_stdout(path):
+        yield Fault(where, "is where the answer itself goes", "another name")
+    else:
+        try:
+            refuse_unwritable(path)
+        except InputError as error:
+            yield from (Fault(f"{option} {fault.where}", fault.wrong, fault.instead) for fault in error.faults)
+
+
+def _same(one: Path, other: Path) -> bool:
+    """Whether two paths lead to one file, which need not exist yet."""
+    try:
+        return one.samefile(other)
+    except OSError:
+        return os.path.realpath(one) == os.path.realpath(other)
+
+
+def _is_stdout(path: Path) -> bool:
+    try:
+        out = os.fstat(1)
+        return stat.S_ISREG(out.st_mode) and os.path.samestat(path.stat(), out)
+    except OSError:
+        return False
 
 
 def deliver(
@@ -53,13 +97,34 @@ def deliver(
     figure: Callable[[Any], Any],
     notes: Callable[[str], None],
 ) -> str:
-    """Write the files asked for and return what belongs on stdout; in JSON mode the cautions go to ``notes``."""
-    if outputs.csv is not None:
-        csv(answer, outputs.csv)
-    if outputs.plot is not None:
-        from .plots import save_figure
+    """Write the files asked for and return what belongs on stdout; in JSON mode the cautions go to ``notes``.
 
-        save_figure(figure(answer), outputs.plot)
+    Raises
+    ------
+    UndeliveredError
+        A file could not be written; it holds the answer.
+    """
+    faults: list[Fault] = []
+    try:
+        if outputs.csv is not None:
+            csv(answer, outputs.csv)
+    except InputError as error:
+        faults += error.faults
+    try:
+        if outputs.plot is not None:
+            from .plots import save_figure
+
+            save_figure(figure(answer), outputs.plot)
+    except InputError as error:
+        faults += error.faults
+    said = _said(answer, outputs, text=text, notes=notes)
+    if faults:
+        raise UndeliveredError(faults, answer=said)
+    return said
+
+
+def _said(answer: Answer, outputs: Outputs, *, text: Callable[[Any], str], notes: Callable[[str], None]) -> str:
+    """The answer in words, or as one JSON document with its cautions told to ``notes``."""
     if not outputs.as_json:
         return text(answer)
     for caution in answer.cautions:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import difflib
 import re
 import warnings
 from datetime import timedelta, timezone, tzinfo
@@ -15,6 +14,7 @@ import pandas as pd
 
 from ..errors import Fault, InputError
 from ..types import BoolArray, FloatArray, IntArray
+from .own_csv_faults import ragged, refuse_no_text, titles_of
 from .readings import COLUMNS, Reading, numbers_of, on_grid, step_of, without_codes
 
 Label = Literal["start", "middle", "end"]
@@ -36,69 +36,54 @@ def read_own_csv(path: Path, *, name: str, label: Label | None, stamps_in: str |
     if label is None:
         choice = 'label = "start", "middle" or "end": which instant of its interval a time stamp names'
         raise InputError(Fault("site.toml: weather: label", f"it is missing, and {name} needs it", choice))
-    raw = _table(path, name=name)
-    stamps = _utc_seconds(raw["time"], name=name, stamps_in=stamps_in)
+    raw, first_line = _table(path, name=name)
+    stamps = _utc_seconds(raw["time"], name=name, stamps_in=stamps_in, first_line=first_line)
     seconds = stamps + round(_MIDDLE[label] * step_of(stamps, name=name)) + shift_s
-    values = numbers_of(raw.drop(columns="time"), name=name, first_line=2)
+    values = numbers_of(raw.drop(columns="time"), name=name, first_line=first_line)
     values, coded = without_codes(values)
     table, step = on_grid(seconds, values, name=name)
     return Reading(table, step / 3600, "record", None, name, coded)
 
 
-def _table(path: Path, *, name: str) -> pd.DataFrame:
-    """The columns we know, the stamps as text."""
+def _table(path: Path, *, name: str) -> tuple[pd.DataFrame, int]:
+    """The columns we know, the stamps as text, and the line of the file on which the first row stands."""
+    refuse_no_text(path, name=name)
+    above = 1
     try:
         with path.open(encoding="utf-8-sig") as file:
-            titles = [title.strip().strip('"') for title in file.readline().rstrip("\r\n").split(",")]
-        _check_titles(titles, name=name)
-        options: dict[str, Any] = {"header": 0, "names": titles, "index_col": False, "skipinitialspace": True}
-        with warnings.catch_warnings():
-            warnings.simplefilter("error", pd.errors.ParserWarning)  # a first row with more cells than titles
-            raw = pd.read_csv(path, encoding="utf-8-sig", dtype={"time": str}, **options)
+            line = file.readline()
+            while line and (not line.strip() or line.startswith("#")):  # notes above the titles
+                above, line = above + 1, file.readline()
+            titles = titles_of(line, where=f"{name}: line {above}")
+            options: dict[str, Any] = {"header": None, "names": titles, "index_col": False, "skipinitialspace": True}
+            with warnings.catch_warnings():
+                warnings.simplefilter("error", pd.errors.ParserWarning)  # a first row with more cells than titles
+                raw = pd.read_csv(file, dtype={"time": str}, **options)
     except UnicodeDecodeError:
         raise InputError(Fault(name, "it is not UTF-8 text", "the table saved as CSV in UTF-8")) from None
     except (pd.errors.ParserError, pd.errors.ParserWarning) as error:
-        raise InputError(
-            Fault(name, f"its rows cannot be read ({error})", "as many cells in each row as titles")
-        ) from None
+        raise InputError(ragged(str(error), titles=len(titles), above=above, name=name)) from None
+    except pd.errors.EmptyDataError:
+        raw = pd.DataFrame(columns=titles)
     if len(raw) < 2:
         raise InputError(Fault(name, "it holds fewer than two rows", "a weather file of at least one whole year"))
-    return pd.DataFrame(raw[["time", *(title for title in COLUMNS if title in titles)]])
+    return pd.DataFrame(raw[["time", *(title for title in COLUMNS if title in titles)]]), above + 1
 
 
-def _check_titles(titles: list[str], *, name: str) -> None:
-    where = f"{name}: line 1"
-    if len(titles) == 1 and ";" in titles[0]:
-        wrong = "its cells are separated by semicolons"
-        raise InputError(Fault(where, wrong, "cells separated by commas, and numbers with a decimal point"))
-    twice = sorted({title for title in titles if title in ("time", *COLUMNS) and titles.count(title) > 1})
-    faults = [Fault(where, f"{title} stands twice", "each column once") for title in twice]
-    for title in ("time", "ghi"):
-        if title not in titles:
-            near = difflib.get_close_matches(title, [t.lower() for t in titles], n=1, cutoff=0.5)
-            found = next((t for t in titles if near and t.lower() == near[0]), None)
-            wrong = f"no column {title}" + (f" (there is {found!r})" if found else "")
-            faults.append(
-                Fault(where, wrong, f"a title line such as time,{','.join(COLUMNS)} (time and ghi are required)")
-            )
-    if faults:
-        raise InputError(faults)
-
-
-def _utc_seconds(stamps: pd.Series, *, name: str, stamps_in: str | None) -> IntArray:
+def _utc_seconds(stamps: pd.Series, *, name: str, stamps_in: str | None, first_line: int) -> IntArray:
     """Stamps as seconds since 1970 UTC."""
     where = f"{name}: time"
     if stamps.isna().any():
-        line = int(np.argmax(stamps.isna().to_numpy())) + 2
+        line = int(np.argmax(stamps.isna().to_numpy())) + first_line
         raise InputError(Fault(f"{where}: line {line}", "it is empty", "a time stamp in each row"))
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("error", FutureWarning)  # what pandas 2 says of mixed offsets, pandas 3 raises
             times = pd.to_datetime(stamps, format="ISO8601")
         if times.dt.tz is not None and not _zoned(stamps).all():
-            times = _mixed_offsets(stamps, where=where)
+            times = _mixed_offsets(stamps, where=where, first_line=first_line)
     except (ValueError, FutureWarning, pd.errors.OutOfBoundsDatetime):
-        times = _mixed_offsets(stamps, where=where)
+        times = _mixed_offsets(stamps, where=where, first_line=first_line)
     index = pd.DatetimeIndex(times)
     if index.tz is not None and stamps_in is not None:
         wrong = f"it is given, but the stamps of {name} carry an offset"
@@ -106,7 +91,9 @@ def _utc_seconds(stamps: pd.Series, *, name: str, stamps_in: str | None) -> IntA
     if index.tz is None:
         if stamps_in is None:
             wrong = f"{stamps.iloc[0]} carries no offset from UTC, and the site file names no clock for it"
-            raise InputError(Fault(f"{where}: line 2", wrong, f"{_CLOCKS} under [weather], or stamps with an offset"))
+            raise InputError(
+                Fault(f"{where}: line {first_line}", wrong, f"{_CLOCKS} under [weather], or stamps with an offset")
+            )
         index = _localized(index, clock_of(stamps_in), where=where, stamps_in=stamps_in)
     return np.asarray(index.tz_convert("UTC").round("s").as_unit("s").asi8, dtype=np.int64)
 
@@ -116,19 +103,19 @@ def _zoned(stamps: pd.Series) -> BoolArray:
     return np.asarray(stamps.str.contains(_ZONED, regex=True).to_numpy(dtype=bool))
 
 
-def _mixed_offsets(stamps: pd.Series, *, where: str) -> pd.Series:
+def _mixed_offsets(stamps: pd.Series, *, where: str, first_line: int) -> pd.Series:
     """Stamps whose offsets differ (daylight saving) as UTC; the line of the first that cannot be read otherwise."""
     times = pd.to_datetime(stamps, format="ISO8601", utc=True, errors="coerce")
     bad = times.isna().to_numpy()
     shape = "ISO 8601, e.g. 2021-03-01T12:00:00+01:00"
     if bad.any():
         row = int(np.argmax(bad))
-        raise InputError(Fault(f"{where}: line {row + 2}", f"{stamps.iloc[row]!r} is no time stamp", shape))
+        raise InputError(Fault(f"{where}: line {row + first_line}", f"{stamps.iloc[row]!r} is no time stamp", shape))
     naive = ~_zoned(stamps)
     if naive.any():
         row = int(np.argmax(naive))
         wrong = f"{stamps.iloc[row]} carries no offset, others do"
-        raise InputError(Fault(f"{where}: line {row + 2}", wrong, "all stamps with an offset, or none"))
+        raise InputError(Fault(f"{where}: line {row + first_line}", wrong, "all stamps with an offset, or none"))
     return times
 
 

@@ -156,7 +156,8 @@ def check_unit(record: Record) -> tuple[AuditCheck, Record]:
     if not 0.75 < top / _CLEAR_DAY / factor < 1.33:
         return AuditCheck("unit", False, True, text, "light in W/m2, and the place it was measured at"), record
     mended = {name: record.columns[name] / factor for name in LIGHT if name in record.columns}
-    text, instead = f"{text}: it looks like {unit}", f"light in W/m2: divide it by {factor:.4g}"
+    turned = f"multiply it by {1.0 / factor:.4g}" if factor < 1.0 else f"divide it by {factor:.4g}"
+    text, instead = f"{text}: it looks like {unit}", f"light in W/m2: {turned}"
     return AuditCheck("unit", False, True, text, instead), record.but(**mended)
 
 

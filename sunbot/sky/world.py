@@ -12,6 +12,7 @@ import pvlib
 
 from ..calendar import REFERENCE_YEAR
 from ..errors import Fault, InputError
+from ..inputs.site_checks import etc_zone
 from ..types import FloatArray, Place
 from .reference_sky import DAY_MONTH, MONTH_DAYS
 from .sun_arc import sun_arc
@@ -97,8 +98,7 @@ def first_climate(latitude: float, longitude: float) -> FirstClimate:
 
 def suggested_zone(longitude: float) -> str:
     """A zone of fixed offset by the longitude, e.g. ``Etc/GMT-1`` at 8 E: close to the sun, no daylight saving."""
-    hours = round(longitude / 15.0)
-    return "Etc/GMT" if hours == 0 else f"Etc/GMT{-hours:+d}"  # these names count west of Greenwich
+    return etc_zone(round(longitude / 15.0))
 
 
 def monthly_extraterrestrial_kwh(latitude: float) -> FloatArray:

@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 from sunbot.errors import InputError
-from sunbot.inputs import Robot, Site, load_robot, load_site
+from sunbot.inputs import Robot, Site, load_robot, load_site, site_with_weather
 
 SITES = Path(__file__).parents[2] / "sites"
 
@@ -179,7 +179,7 @@ WRONG_ROBOT = {
     "unknown chemistry": (
         '"lead-acid"',
         '"lead"',
-        r'chemistry: "lead" .*"lead-acid"; the choices are "lifepo4", "li-ion"',
+        r'chemistry: "lead" .*"lead-acid", if these are 2\.0 V cells; the choices are "lifepo4" \(cells of 3\.2 V\)',
     ),
     "single brackets": ("[[panel]]", "[panel]", r"panel: is a single table\. Write \[\[panel\]\]"),
     "no table": ('"site.toml"', '"site.toml"\ntarget = 3', r"target: 3 is no table\. Write \[target\]"),
@@ -270,6 +270,18 @@ WRONG_SITE = {
         'file = "a.csv"',
         r'source: is missing although .*Write source = "file"',
     ),
+    "file beside another source": (
+        'source = "climate"',
+        'source = "climate"\nfile = "a.csv"',
+        r'weather: source: is "climate", and file = "a\.csv" would not be read\. Write source = "file", or no file',
+    ),
+    "sign of a fixed clock": ("Europe/Zurich", "Etc/GMT+1", r'time_zone: "Etc/GMT\+1" is 1 h behind UTC .*"Etc/GMT-1"'),
+    "offset for a zone": (
+        "Europe/Zurich",
+        "UTC+1",
+        r'"UTC\+1" is no time zone\. Write "Etc/GMT-1" for a clock 1 h ahead',
+    ),
+    "offset west for a zone": ("Europe/Zurich", "GMT-03:00", r'Write "Etc/GMT\+3" for a clock 3 h behind UTC'),
     "years missing": ('"climate"', '"nasa-power"', r"first_year: is missing; source \"nasa-power\" needs it"),
     "clock of the stamps": ('"climate"', '"climate"\nstamps_in = "Berlin"', r'stamps_in: "Berlin" is no clock'),
     "the reader's own key": ('name = "Test field"', 'name = "a"\nfolder = "x"', r"folder: is no known key"),
@@ -282,6 +294,72 @@ def test_a_wrong_site_file_is_refused_with_key_and_remedy(folder, old, new, said
     error = refusal(folder, "site.toml", old, new)
     assert any(re.search(said, str(fault)) for fault in error.faults), str(error)
     assert all(fault.where.startswith("site.toml: ") for fault in error.faults)
+
+
+SWAPPED = [(-75, 5), (-57, 4), (-24, 1), (8, 1), (13, 1), (30, 2), (77, 5), (139, 9), (151, 10)]
+
+
+@pytest.mark.parametrize(("longitude", "hours"), SWAPPED)
+def test_a_fixed_clock_with_its_sign_mistaken_is_found(longitude, hours):
+    """The sun tells on which side of Greenwich a clock belongs; the right sign is accepted."""
+    right, wrong = ("-", "+") if longitude > 0 else ("+", "-")
+    Site(name="a", latitude=40.0, longitude=longitude, time_zone=f"Etc/GMT{right}{hours}")
+    with pytest.raises(ValueError, match="the signs are the other way round"):
+        Site(name="a", latitude=40.0, longitude=longitude, time_zone=f"Etc/GMT{wrong}{hours}")
+
+
+# Published: the IANA time zone database; the offsets of standard and summer time that people keep there.
+KEPT = [
+    (-9.2, 1),
+    (-9.2, 2),
+    (-21.9, 0),
+    (74.0, 8),
+    (-68.3, -3),
+    (-157.4, 14),
+    (-172.0, 13),
+    (179.0, 12),
+    (-176.6, -10),
+]
+
+
+@pytest.mark.parametrize(("longitude", "hours"), KEPT)
+def test_fixed_clocks_that_are_kept_somewhere_are_believed(longitude, hours):
+    """Galicia in winter and summer, Iceland, western China, Ushuaia, Line Islands, Samoa, Fiji, Aleutians."""
+    Site(name="a", latitude=10.0, longitude=longitude, time_zone=f"Etc/GMT{-hours:+d}" if hours else "Etc/GMT")
+
+
+def test_another_source_on_the_command_line_leaves_no_file_behind(folder):
+    """A site whose file was set aside is a sound site: it can be written out and read again."""
+    site = Site(name="a", latitude=1.0, longitude=2.0, time_zone="UTC", weather={"source": "file", "file": "a.csv"})
+    aside = site_with_weather(site, "clear-sky")
+    assert (aside.weather.source, aside.weather.file) == ("clear-sky", None)
+    assert Site.model_validate(aside.model_dump(by_alias=True)) == aside
+
+
+LIGHT = [1.1, 1.9, 3.1, 4.3, 5.2, 5.8, 5.9, 5.0, 3.7, 2.2, 1.2, 0.9]
+DAYS = [31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31]
+SLIPS = {
+    "MJ": ("ghi_kwh_m2_day", [x * 3.6 for x in LIGHT], "each divided by 3.6 if these are MJ/m2 a day"),
+    "sums": ("ghi_kwh_m2_day", [x * d for x, d in zip(LIGHT, DAYS, strict=True)], "days of its month"),
+    "Wh": ("ghi_kwh_m2_day", [x * 1000 for x in LIGHT], "each divided by 1000 if these are Wh"),
+    "kelvin": ("temp_max_c", [280.0 + x for x in LIGHT], "each less 273.15 if these are kelvin"),
+    "Fahrenheit": ("temp_max_c", [70.0 + x for x in LIGHT], "degrees Fahrenheit"),
+    "per cent": ("year_to_year", [15.0] * 12, "each divided by 100 if these are per cent"),
+    "text": ("temp_max_c", ["3,5"] * 12, "one number for all months or a list of twelve"),
+    "commas": ("ghi_kwh_m2_day", [1, 5] * 12, "twelve with decimal commas"),
+}
+
+
+@pytest.mark.parametrize(("key", "values", "said"), SLIPS.values(), ids=SLIPS)
+def test_a_list_in_another_unit_is_one_mistake_that_names_the_unit(folder, key, values, said):
+    """Twelve values off by one factor are told once, on one line."""
+    text = re.sub(rf"^{key} = .*\n", "", SITE, flags=re.M)
+    (folder / "site.toml").write_text(f"{text}{key} = {values}\n".replace("'", '"'), encoding="utf-8")
+    with pytest.raises(InputError) as caught:
+        load_site(folder / "site.toml")
+    (fault,) = caught.value.faults
+    assert fault.where == f"site.toml: climate: {key}"
+    assert said in fault.instead
 
 
 def test_a_panel_held_at_the_battery_needs_its_voltage(folder):
@@ -358,6 +436,93 @@ def test_what_leans_on_a_wrong_key_is_not_reported(folder):
     assert [fault.where for fault in error.faults] == ["robot.toml: battery: chemistry"]
 
 
+CALLED = {
+    "li-ion": ["lipo", "LiPo", "li-po", "NMC", "lithium-ion", "liion", "Li-Ion"],
+    "lifepo4": ["LFP", "LiFePO4"],
+    "lead-acid": ["AGM", "gel", "SLA", "VRLA", "Pb", "lead acid"],
+    "nimh": ["Ni-MH"],
+}
+
+
+@pytest.mark.parametrize(("meant", "name"), [(meant, name) for meant, names in CALLED.items() for name in names])
+def test_another_name_of_a_chemistry_is_answered_as_advice(folder, meant, name):
+    """The one it stands for, with the voltage of its cells to compare, and the choices."""
+    said = str(refusal(folder, "robot.toml", '"lead-acid"', f'"{name}"'))
+    assert re.search(rf'Write "{meant}", if these are \d\.\d V cells; the choices are', said), said
+
+
+@pytest.mark.parametrize("name", ["nicd", "NiCd", "lithium", "lto", "nimc", "lipo4", "led-acid", "li", ""])
+def test_a_chemistry_is_never_guessed_by_its_spelling(folder, name):
+    """A cell charged as its near namesake can burn: all four stand there with their voltages."""
+    said = str(refusal(folder, "robot.toml", '"lead-acid"', f'"{name}"'))
+    assert 'Write what is printed on the cells, one of "lifepo4" (cells of 3.2 V), "li-ion" (cells of 3.6 V)' in said
+
+
+WRONG_SIZES = {
+    "mAh": (
+        "capacity_ah = 12",
+        "capacity_ah = 12000",
+        r"battery: capacity_ah: 12000 Ah at 12 V is 144 kWh.* Write 12 if these were milliampere-hours\.$",
+    ),
+    "panel in mW": (
+        "watts = 40\nvmp_v = 18.0\nimp_a = 2.22",
+        "watts = 40000",
+        r"watts: 40000 W is not believed for one panel.* Write 40 if these were milliwatts",
+    ),
+    "load in mW": ("watts = 4\n", "watts = 12000\n", r"load 1 .*watts: 12000 W is not believed.* Write 12 if"),
+    "load in mA": (
+        "watts = 4\n",
+        "amps = 800\n",
+        r"amps: 800 A is not believed.* Write 0\.8 if these were milliamperes",
+    ),
+    "panel wire in mm": (
+        "tilt_deg = 10",
+        "tilt_deg = 10\nwire = { length_m = 1000 }",
+        # 2 x 1000 m x 13.3 ohm/km (IEC 60228, class 5, 1.5 mm2) x 2.22 A = 59.1 V
+        r"panel 1 .*: wire: length_m: 1000 m of 1\.5 mm2.* would take 59\.1 V of the panel.s 18 V.* Write 1 if",
+    ),
+    "panel wire in mm, no data sheet": (
+        "vmp_v = 18.0\nimp_a = 2.22\nvoc_v = 21.8\nisc_a = 2.35",
+        "wire = { length_m = 800 }",
+        r"wire: length_m: 800 m of 1\.5 mm2.* Write 0\.8 if these were millimetres",
+    ),
+    "panel wire in mm, beyond any wire": (
+        "tilt_deg = 10",
+        "tilt_deg = 10\nwire = { length_m = 1500 }",
+        r"wire: length_m: 1500 is outside 0 to 1000\. Write metres: 1\.5 if these were millimetres",
+    ),
+    "rail wire in mm": (
+        "volts = 5",
+        "volts = 5\nwire = { length_m = 300, area_mm2 = 0.5 }",
+        # 2 x 300 m x 39 ohm/km x 0.8 A = 18.7 V
+        r'rail 1 \("logic"\): wire: length_m: 300 m of 0\.5 mm2.* 18\.7 V of the rail.s 5 V.* Write 0\.3 if',
+    ),
+    "volts for cells": (
+        "series = 6",
+        "series = 12",
+        r"cells_in_series: 12 cells of lead-acid are 24 V, and the panels reach 21\.8 V .* the count of cells, 6 for",
+    ),
+}
+
+
+@pytest.mark.parametrize(("old", "new", "said"), WRONG_SIZES.values(), ids=WRONG_SIZES)
+def test_a_slip_of_the_unit_is_told_once_with_the_unit_it_may_have_been(folder, old, new, said):
+    """One fault, with the key, the size it would be and what to write."""
+    error = refusal(folder, "robot.toml", old, new)
+    assert len(error.faults) == 1, str(error)
+    assert re.search(said, str(error.faults[0])), str(error)
+
+
+def test_large_but_possible_sizes_are_believed(folder):
+    """The limits refuse slips, not large robots: 800 Ah, a panel of 700 W, 30 m of thick wire."""
+    panel = "watts = 700\nvmp_v = 40.0\nvoc_v = 48.0\nwire = { length_m = 30, area_mm2 = 16 }"
+    text = ROBOT.replace("watts = 40\nvmp_v = 18.0\nimp_a = 2.22\nvoc_v = 21.8\nisc_a = 2.35", panel)
+    (folder / "robot.toml").write_text(text.replace("_ah = 12", "_ah = 800"), encoding="utf-8")
+    assert load_robot(folder / "robot.toml").watts == 700
+    (folder / "robot.toml").write_text(text.replace("series = 6", "series = 12"), encoding="utf-8")
+    assert load_robot(folder / "robot.toml").battery.cells_in_series == 12
+
+
 @pytest.mark.parametrize("which", ["robot", "site"])
 @pytest.mark.parametrize(
     ("content", "said"),
@@ -365,13 +530,39 @@ def test_what_leans_on_a_wrong_key_is_not_reported(folder):
         (b"", "is empty"),
         (b"  \n\n", "is empty"),
         (b"# only words\n", "holds no keys"),
-        (b'name = "a"\nlatitude = 4,7\n', r"is no TOML in line 2 .*latitude = 4,7"),
-        (b'name = "a"\nname = "b"\n', r"is no TOML in line 2 \(cannot overwrite a value\)"),
+        (
+            b'name = "a"\nlatitude = 4,7  # deg\n',
+            r"is no TOML in line 2: a decimal comma in latitude = 4,7  # deg\. Write .*: latitude = 4\.7\.$",
+        ),
+        (
+            b'name = "a"\nname = "b"\n',
+            r'is no TOML in line 2: the key name stands twice in its table: name = "b"\. Write',
+        ),
+        (b"[climate]\na = 1\n[climate]\n", r"is no TOML in line 3: the table climate stands twice: \[climate\]\. "),
+        (
+            b"watts = 40 W\n",
+            r"is no TOML in line 1: a unit behind the number in watts = 40 W\. Write .*: watts = 40\.$",
+        ),
+        ("name = \u201ca\u201d\n".encode(), "is no TOML in line 1: curly quotes in name = .* Write straight quotes"),
+        (b'name = "a" "\\"\n', r'is no TOML in line 1 \(expected.*\): name = "a" "\\"\. Write key = value'),
         (b'name = "a"\n# caf\xe9\n', r"is not UTF-8 text \(byte 0xe9 in line 2\)"),
         (b"a = " + b"[" * 50_000, "holds lists or tables nested too deep"),
         (b"latitude = " + b"9" * 10_000, "holds a number too long to read"),
     ],
-    ids=["empty", "blank", "comments", "comma", "twice", "latin-1", "deep", "digits"],
+    ids=[
+        "empty",
+        "blank",
+        "comments",
+        "comma",
+        "twice",
+        "table",
+        "unit",
+        "curly",
+        "words",
+        "latin-1",
+        "deep",
+        "digits",
+    ],
 )
 def test_what_is_no_toml_is_refused_with_the_line(folder, which, content, said):
     """A file that cannot be parsed is named, with the line where there is one."""

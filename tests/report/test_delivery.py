@@ -4,13 +4,14 @@ from __future__ import annotations
 
 import errno
 import json
+import os
 from pathlib import Path
 from types import SimpleNamespace
 
 import pytest
 
 from sunbot import writing
-from sunbot.errors import InputError
+from sunbot.errors import InputError, UndeliveredError
 from sunbot.report.delivery import Outputs, deliver
 from sunbot.types import Caution
 from sunbot.writing import write_text, write_whole
@@ -60,7 +61,7 @@ def test_what_cannot_be_written_is_refused_before_the_work(tmp_path):
     outputs = Outputs(csv=tmp_path / "no" / "steps.csv", plot=tmp_path / "answer.gif")
     with pytest.raises(InputError) as caught:
         outputs.ready()
-    folder, picture = (str(fault) for fault in caught.value.faults)
+    picture, folder = (str(fault) for fault in caught.value.faults)
     assert f"there is no folder {tmp_path / 'no'}" in folder
     assert "a name ending in .png, .svg or .pdf" in picture
     Outputs(csv=tmp_path / "steps.csv", plot=tmp_path / "ANSWER.PNG").ready()
@@ -119,3 +120,77 @@ def test_a_file_is_seen_only_when_it_is_complete(tmp_path):
     plain = tmp_path / "plain"
     plain.touch()
     assert target.stat().st_mode == plain.stat().st_mode
+
+
+@pytest.mark.parametrize("link", [False, True])
+def test_no_file_of_the_question_is_overwritten(tmp_path, link):
+    """What the question is read from is refused, by its own name or by another that leads there."""
+    weather = tmp_path / "tower.csv"
+    weather.write_text("time,ghi\n")
+    name = tmp_path / "by-another-name.csv" if link else weather
+    if link:
+        name.symlink_to(weather)
+    with pytest.raises(InputError, match=r"--csv .* is a file this question is read from"):
+        Outputs(csv=name).ready([weather])
+    Outputs(csv=tmp_path / "steps.csv").ready([weather])
+
+
+def test_nothing_is_written_under_the_ending_of_a_robot_file(tmp_path):
+    """A .toml is somebody's robot or site, also one that is not there yet."""
+    with pytest.raises(InputError, match=r"has the ending of a robot or site file\. Write another name, e\.g\. robot2"):
+        Outputs(csv=tmp_path / "robot2.toml").ready()
+
+
+def test_one_file_cannot_take_two_outputs(tmp_path):
+    """The plot would replace the table."""
+    with pytest.raises(InputError, match="is the file of --csv too"):
+        Outputs(csv=tmp_path / "a.png", plot=tmp_path / "a.png").ready()
+
+
+def test_trying_a_path_leaves_no_trace_and_changes_nothing(tmp_path):
+    """Neither a new file nor a touched one."""
+    old = tmp_path / "old.csv"
+    old.write_text("of yesterday")
+    Outputs(csv=old, plot=tmp_path / "new.png").ready()
+    assert [path.name for path in tmp_path.iterdir()] == ["old.csv"]
+    assert old.read_text() == "of yesterday"
+
+
+def test_a_folder_without_room_is_told_before_the_work(tmp_path, monkeypatch):
+    """The path is tried, not only looked at."""
+
+    def refuse(**_):
+        raise OSError(errno.ENOSPC, "No space left on device")
+
+    monkeypatch.setattr(writing.tempfile, "mkstemp", refuse)
+    with pytest.raises(InputError, match=r"--csv .*steps\.csv: cannot be written \(No space left on device\)"):
+        Outputs(csv=tmp_path / "steps.csv").ready()
+
+
+def test_a_link_stays_a_link_and_its_file_is_replaced(tmp_path):
+    """Also one that leads to a file that does not exist yet, and the rights of an old file stay."""
+    target, link = tmp_path / "there.csv", tmp_path / "link.csv"
+    link.symlink_to("there.csv")
+    write_text(link, "first")
+    target.chmod(0o640)
+    write_text(link, "second")
+    assert link.is_symlink()
+    assert target.read_text() == "second"
+    assert target.stat().st_mode & 0o777 == 0o640
+
+
+def test_what_is_no_ordinary_file_is_left_as_it_is(tmp_path):
+    """A pipe, as a device would be, is refused before the work and at its end, and is still a pipe."""
+    pipe = tmp_path / "pipe.csv"
+    os.mkfifo(pipe)
+    for attempt in (lambda: Outputs(csv=pipe).ready(), lambda: write_text(pipe, "time\n")):
+        with pytest.raises(InputError, match="is no ordinary file"):
+            attempt()
+    assert pipe.is_fifo()
+
+
+def test_an_answer_is_not_lost_with_its_file(tmp_path):
+    """Where the file cannot be written after the work, the error carries the answer."""
+    with pytest.raises(UndeliveredError, match="there is no folder") as caught:
+        told(Outputs(csv=tmp_path / "gone" / "steps.csv"), [])
+    assert caught.value.answer == "in words\n"

@@ -106,8 +106,34 @@ def _rows(*minutes: int, ghi: object = 10) -> str:
         (_rows(0, 60).replace("T01:00Z", "T01:00"), r"line 3: 2020-01-01T01:00 carries no offset, others do"),
         (_rows(0, 60, 120).replace("2020-01-01T02:00Z", ""), "line 4: it is empty"),
         (_rows(0, 60, 120).replace("2020-01-01T02", "2920-01-01T02"), "most steps are missing|is no time stamp"),
-        (_rows(0, 60) + "2020-01-01T02:00Z,1,2,3,4,5,6\n", "its rows cannot be read"),
-        (_rows(0, 60, ghi="12,5"), "its rows cannot be read"),
+        (
+            _rows(0, 60) + "2020-01-01T02:00Z,1,2,3,4,5,6\n",
+            r"line 4: its rows cannot be read: 7 cells here, and 4 titles",
+        ),
+        (
+            _rows(0, 60, ghi="12,5"),
+            r"line 2: its rows cannot be read: more cells than the 4 titles\. .* a decimal point",
+        ),
+        ("# notes\n\n" + _rows(0, 60) + "2020-01-01T02:00Z,1,2,3,4\n", r"line 6: its rows cannot be read: 5 cells"),
+        ("# notes\n" + _rows(0, 60, ghi="much"), r"line 3: ghi: 'much' is not a number"),
+        ("# notes\n" + _rows(0, 60).replace("T01:00Z", "T25:00Z"), r"line 4: '2020-01-01T25:00Z' is no time stamp"),
+        (_rows(0, 60) + '"2020-01-01T02:00Z,1,2,3\n', r"line 4: its rows cannot be read: a quotation mark is opened"),
+        (
+            _rows(0, 60).replace("temp_air", "temperature"),
+            r"line 1: the column 'temperature' .* Write temp_air if it holds",
+        ),
+        (
+            _rows(0, 60).replace("wind_speed", "Wind Speed (m/s)"),
+            r"the column 'Wind Speed \(m/s\)' .* Write wind_speed if",
+        ),
+        (
+            _rows(0, 60).replace("ghi", "ghi [W/m2]"),
+            r"no column ghi \(there is 'ghi \[W/m2\]'\)\. Write ghi over it if",
+        ),
+        (_rows(0, 60).replace("ghi", "GHI_W_m2"), r"no column ghi \(there is 'GHI_W_m2'\)"),
+        (_rows(0, 60).replace("time,", "Timestamp,"), r"no column time \(there is 'Timestamp'\)"),
+        (_rows(0, 60).replace(",", "\t"), "separated by tabs"),
+        ("PK\x03\x04 and so on", "a workbook of a spreadsheet program, or another archive"),
     ],
 )
 def test_a_wrong_file_says_what_where_and_what_to_write(site_of, tmp_path, text, message):
@@ -117,6 +143,20 @@ def test_a_wrong_file_says_what_where_and_what_to_write(site_of, tmp_path, text,
         weather_for(site_of(file="wrong.csv", label="start"))
     assert "wrong.csv" in str(caught.value)
     assert "Write " in str(caught.value)
+    assert "C error" not in str(caught.value)
+    assert "\n" not in str(caught.value)
+
+
+def test_notes_above_the_titles_and_other_columns_are_no_trouble(site_of, year, write_csv, tmp_path):
+    """Lines with a # at the top, also with quotes in them, and columns that mean nothing here are passed over."""
+    plain = reading_for(site_of(file=write_csv(year), label="start"))
+    text = (tmp_path / "tower.csv").read_text()
+    (tmp_path / "noted.csv").write_text(f'# the "tower, 2 m\n\n#\n{text}')
+    noted = reading_for(site_of(file="noted.csv", label="start"))
+    pd.testing.assert_frame_equal(noted.table, plain.table)
+    year.assign(temp_module=30.0, rain=0.0, pressure=950.0).pipe(write_csv, "more.csv")
+    more = reading_for(site_of(file="more.csv", label="start"))
+    pd.testing.assert_frame_equal(more.table, plain.table)
 
 
 def test_a_file_that_is_not_utf8_is_refused(site_of, tmp_path):

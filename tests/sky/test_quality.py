@@ -145,7 +145,7 @@ def test_watt_hours_in_a_quarter_hour_step_are_named():
     quarters = table[["ghi"]].resample("15min").interpolate() / 4.0
     found = {c.code: c for c in audit_record(quarters, step_h=0.25, place=place)}
     assert "Wh/m2 in a step" in found["unit"].text
-    assert "divide it by 0.25" in found["unit"].text
+    assert "multiply it by 4" in found["unit"].text
 
 
 def test_a_stuck_week_is_found(table: pd.DataFrame, which: str):
