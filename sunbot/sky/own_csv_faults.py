@@ -22,8 +22,10 @@ MEANT = {
     "ghi": ("ghi", "globalhorizontal", "global", "globalhorizontalirradiance", "globalirradiance", "globalradiation"),
     "dni": ("dni", "directnormal", "directnormalirradiance", "bni"),
     "dhi": ("dhi", "diffuse", "diffusehorizontal", "diffusehorizontalirradiance", "diffuseradiation"),
-    "temp_air": ("temperature", "temp", "airtemp", "airtemperature", "tempair", "tair", "tamb", "ambient", "t2m")
-    + ("ambienttemp", "ambienttemperature", "drybulb", "outdoortemperature"),
+    "temp_air": (
+        *("temperature", "temp", "airtemp", "airtemperature", "tempair", "tair", "tamb", "t2m"),
+        *("ambient", "ambienttemp", "ambienttemperature", "drybulb", "outdoortemperature"),
+    ),
     "wind_speed": ("wind", "windspeed", "ws", "meanwind", "windvelocity"),
 }
 """What people write over a column in place of our title, as letters and digits; common practice."""

@@ -72,10 +72,10 @@ def test_converter_and_wire_count_and_so_does_what_else_the_battery_feeds(robot_
     assert not told(robot, hours_2001, also_w={"the heater": 30.0})
     text = told(robot, hours_2001, also_w={"the heater": 40.0})["pack-too-weak"].text
     assert 'Running at once, "computer" and the heater ask for 365 W' in text
-    # 0.05 ohm of wire (19.5 ohm/km, IEC 60228) at 52 A take 135 W more, 169 W before the converter
-    wired = {**LOGIC, "wire": {"length_m": 0.05 / 2 / 0.0195, "area_mm2": 1.0}}
+    # 0.04 ohm of wire (19.5 ohm/km, IEC 60228) at 52 A take 108 W more, 135 W before the converter
+    wired = {**LOGIC, "wire": {"length_m": 0.04 / 2 / 0.0195, "area_mm2": 1.0}}
     robot = robot_of([wired], [{"name": "computer", "rail": "logic", "watts": 260.0}])
-    assert "asks for 494 W" in told(robot, hours_2001)["pack-too-weak"].text
+    assert "asks for 460 W" in told(robot, hours_2001)["pack-too-weak"].text
 
 
 @pytest.mark.parametrize(("peak_a", "fires"), [(57.7, True), (57.5, False)])
