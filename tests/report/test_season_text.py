@@ -1,6 +1,7 @@
 """The answer of season as text, table, document and pictures, and the command around it."""
 
 import json
+from dataclasses import replace
 
 import numpy as np
 import pandas as pd
@@ -87,7 +88,7 @@ def test_text_tells_every_part(found):
     for head in (
         "Invented post at Invented knoll",
         "Month by month",
-        "Lowest charge of the month, over the years",
+        "Lowest charge of the month, over the deployments",
         "The darkest days in a row",
         "The worst fortnight",
         "The work each month affords",
@@ -98,7 +99,7 @@ def test_text_tells_every_part(found):
         "Cautions",
     ):
         assert head in text
-    assert f"from {found.worst.year_start}" in text
+    assert f"the one from year {found.worst.year_start.year - 2000}, 20 October" in text
     november = next(entry for entry in found.calendar.entries if entry.month == 11)
     assert f"  Nov  {november.minutes_per_day:>16.0f}" in text
     assert f"tilt {found.best_mount.tilt_deg:.0f} deg" in text
@@ -111,6 +112,37 @@ def test_months_the_robot_is_not_out_are_left_out(found):
     part = season_text(found).split("Harvest by the way the nose is held")[1].split("\n\n")[0]
     rows = [line.split()[0] for line in part.splitlines()[3:]]
     assert rows == ["Oct", "Nov"]
+
+
+def test_calendar_rows_say_where_the_robot_is_not_out(found):
+    """Ten months outside the deployment are told, not left out and not given work."""
+    part = season_text(found).split("The work each month affords")[1].split("\n\n")[0]
+    rows = {line.split()[0]: line for line in part.splitlines()[2:]}
+    assert [month for month, row in rows.items() if "not out" not in row] == ["Oct", "Nov"]
+    assert len(rows) == 12
+
+
+def test_mounts_and_headings_say_on_how_many_years_they_stand(found):
+    """All five here; the first five where more were generated."""
+    assert season_text(found).count("means of all 5 years") == 2
+    weather = found.check.weather
+    longer = replace(weather, table=pd.concat([weather.table] * 2), row=np.concatenate([weather.row] * 2))
+    text = season_text(replace(found, check=replace(found.check, weather=longer)))
+    assert text.count("means of the first 5 of 10 years") == 2
+
+
+def test_a_missed_target_names_both_remedies(found):
+    """Less essential load, or what pick finds."""
+    text = season_text(replace(found, calendar=replace(found.calendar, possible=False)))
+    assert "Shrink the essential loads, or see" in text
+    assert "sunbot pick for a larger panel or battery" in text
+
+
+def test_a_long_name_of_a_load_is_not_clipped(found):
+    """The column is as wide as its head."""
+    entries = tuple(replace(entry, load="sight and sound of all things") for entry in found.calendar.entries)
+    text = season_text(replace(found, calendar=replace(found.calendar, entries=entries)))
+    assert "sight and sound of all things" in text
 
 
 def test_csv_is_the_worst_fortnight_in_the_columns_of_check(found):
