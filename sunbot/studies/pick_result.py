@@ -35,6 +35,20 @@ class Pair:
 
 
 @dataclass(frozen=True)
+class Shortfall:
+    """A panel wattage for which no battery in range meets the target: what it comes to with the largest one tried.
+
+    battery_ah, survival : None where none was tried: over all years the panel gives less than the target asks for.
+    work_done : in the worst month; None: none asked, or none tried.
+    """
+
+    watts: float
+    battery_ah: float | None = None
+    survival: float | None = None
+    work_done: float | None = None
+
+
+@dataclass(frozen=True)
 class Neighbour:
     """A pair one step beside the recommended one: which step, and what it comes to."""
 
@@ -82,7 +96,10 @@ class SurvivalMap:
 
 @dataclass(frozen=True, eq=False)
 class PickResult:
-    """The answer of `pick`; survival_map and controllers only where asked for."""
+    """The answer of `pick`; survival_map and controllers only where asked for.
+
+    battery_range_ah : capacities between which batteries were looked for. shortfalls : of the wattages without one.
+    """
 
     robot: Robot
     weather: Weather
@@ -92,6 +109,8 @@ class PickResult:
     neighbours: tuple[Neighbour, ...]
     by_autonomy: AutonomySizing
     cautions: tuple[Caution, ...]
+    battery_range_ah: tuple[float, float]
+    shortfalls: tuple[Shortfall, ...] = ()
     survival_map: SurvivalMap | None = None
     controllers: tuple[ControllerOption, ...] = ()
 
@@ -117,6 +136,8 @@ class PickResult:
                 "inputs": self.inputs.to_dict(),
                 "pairs": [asdict(pair) for pair in self.pairs],
                 "recommended": None if self.recommended is None else asdict(self.recommended),
+                "battery_range_ah": list(self.battery_range_ah),
+                "shortfalls": [asdict(shortfall) for shortfall in self.shortfalls],
                 "neighbours": [asdict(neighbour) for neighbour in self.neighbours],
                 "by_autonomy": self.by_autonomy.to_dict(),
             }

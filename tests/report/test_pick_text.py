@@ -5,6 +5,7 @@ import signal
 import subprocess
 import sys
 import time
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -84,10 +85,44 @@ def test_the_text_leads_with_the_pair_and_lists_every_wattage(result):
     taken = result.recommended
     assert f"take {taken.watts:.4g} W of panel and {taken.battery_ah:.4g} Ah" in text
     assert text.index("why:") < text.index("One step beside it") < text.index("The smallest battery for each panel")
-    assert "none in range" in text
+    assert "none of any size: the panel gives less than the target asks for" in text
     assert "autonomy days" in text
     assert "mass kg" in text
     assert max(len(line) for line in text.splitlines()) < 110
+
+
+def test_a_panel_without_a_battery_says_what_was_tried_and_what_fails(robot_file):
+    """The largest battery of the range, and how many years it was alive with that."""
+    robot = load_robot(robot_file)
+    found = pick(robot, watts=(40.0,), battery_ah=(0.2, 0.5), weather=weather_for(robot.site, years=2, seed=1))
+    assert found.battery_range_ah == (0.2, 0.5)
+    (short,) = found.shortfalls
+    assert (short.watts, short.battery_ah) == (40.0, 0.5)
+    # A night of 8 h and more asks for 8 Wh from 0.5 Ah x 11 V: no year is survived.
+    assert short.survival == 0.0
+    text = pick_text(found)
+    assert "none up to 0.5 Ah: alive in 0% of years with that" in text
+    assert "NONE of the pairs in range meets the target: a panel of 40 W, batteries from 0.2 to 0.5 Ah." in text
+    assert found.to_dict()["shortfalls"] == [{"watts": 40.0, "battery_ah": 0.5, "survival": 0.0, "work_done": None}]
+
+
+def test_pairs_that_fail_in_other_years_are_marked(result):
+    """A star and what it means; no star, no legend."""
+    assert result.robot.target.survival == 0.6
+    first, *rest = [pair for pair in result.pairs if pair.battery_ah is not None]
+    pairs = (replace(first, confirmed=0.5), *(replace(pair, confirmed=1.0) for pair in rest))
+    found = replace(result, pairs=pairs)
+    text = pick_text(found)
+    assert text.count("50%*") == 1
+    assert "* alive in fewer than 60% of the other years" in text
+    passed = replace(result, pairs=tuple(replace(pair, confirmed=0.6) for pair in pairs))
+    assert "*" not in pick_text(passed)
+
+
+def test_shares_of_pairs_are_not_rounded_across_the_target(result):
+    """59.8 % of years is not 60."""
+    pairs = tuple(pair if pair.battery_ah is None else replace(pair, confirmed=0.598) for pair in result.pairs)
+    assert "59.8%*" in pick_text(replace(result, pairs=pairs))
 
 
 def test_the_plots_draw_the_pairs_with_units_on_the_axes(result):

@@ -7,7 +7,6 @@ from dataclasses import replace
 import pytest
 
 from sunbot.report.sky_text import sky_text
-from sunbot.sky.quality import AuditCheck
 from sunbot.studies import survey
 
 
@@ -26,7 +25,7 @@ def test_no_audit_is_not_a_passed_audit(seen):
 
 
 def test_failed_checks_are_counted_in_the_first_line(seen):
-    failed = (AuditCheck("clock", False, "an hour late"), *seen.audit[1:])
+    failed = (replace(seen.audit[0], passed=False), *seen.audit[1:])
     assert f"1 of {len(failed)} checks FAILED" in sky_text(replace(seen, audit=failed)).splitlines()[0]
 
 

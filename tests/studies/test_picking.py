@@ -11,6 +11,8 @@ from sunbot.studies.checking import check_on
 from sunbot.studies.deficit import deficit_to_cover_wh, largest_deficit_wh
 from sunbot.studies.effort import Effort
 from sunbot.studies.frontier import Frontier
+from sunbot.studies.pick_result import Pair
+from sunbot.studies.picking import _choose
 from sunbot.studies.resizing import resized
 
 YEARS = 5
@@ -211,3 +213,27 @@ def test_the_running_deficit_is_that_of_a_lossless_store(robots, place):
                 worst = max(worst, deficit)
         assert found[year] == pytest.approx(worst, rel=1e-9)
     assert deficit_to_cover_wh(found[:, None], 4)[0] == np.sort(found)[3]
+
+
+def _pairs(*batteries_ah):
+    """Panels of 10, 20, 30 ... W with these batteries."""
+    return tuple(Pair(10.0 * (at + 1), battery_ah) for at, battery_ah in enumerate(batteries_ah))
+
+
+@pytest.mark.parametrize(
+    ("batteries_ah", "watts", "says", "says_not"),
+    [
+        ((20, 8, 7), 20, ("a larger panel saves less", "a smaller panel costs more"), ("not tried",)),
+        ((9, 8, 7), 10, ("a larger panel saves less", "smallest panel tried: smaller ones were not"), ("costs more",)),
+        ((50, 24, 7), 30, ("a smaller panel costs more", "largest panel tried: larger ones were not"), ("saves less",)),
+        ((None, 8, 7), 20, ("no battery in range does for the smaller ones tried",), ("costs more", "not tried")),
+        ((None, 8), 20, ("the only panel tried that meets the target", "larger ones were not tried"), ("costs more",)),
+        ((8,), 10, ("the only panel tried", "--watts names them"), ("costs more", "saves less")),
+    ],
+)
+def test_the_reason_speaks_only_of_panels_that_were_tried(batteries_ah, watts, says, says_not):
+    """At the end of the wattages tried nothing is known of what lies beyond, and the reason says so."""
+    best, why = _choose(_pairs(*batteries_ah))
+    assert best.watts == watts
+    assert all(words in why for words in says), why
+    assert not any(words in why for words in says_not), why
