@@ -16,7 +16,8 @@ if TYPE_CHECKING:
 
     from ..studies.pick_result import Pair, PickResult
 
-KIND_STYLES = {"direct": (MUTED, ":"), "pwm": (LIGHT, "--"), "mppt": (ASKED, "-")}
+KIND_STYLES = {"direct": (MUTED, ":", "s", 9), "pwm": (LIGHT, "--", "^", 7), "mppt": (ASKED, "-", "o", 6)}
+"""Colour, line, mark and its size: kinds that come to the same lie on each other, so the first are the largest."""
 SHARE_STEPS = (0.0, 0.2, 0.4, 0.6, 0.8, 0.9)
 
 
@@ -53,7 +54,8 @@ def plot_frontier(ax: Axes, result: PickResult) -> Axes:
     none = [pair.watts for pair in result.pairs if pair.battery_ah is None]
     if none:
         floor = np.full(len(none), 0.03)
-        label = f"no battery from {low:.3g} to {high:.4g} Ah does"
+        whose = f"{result.robot.controller.kind}: " if result.controllers else ""
+        label = f"{whose}no battery from {low:.3g} to {high:.4g} Ah does"
         ax.plot(none, floor, "x", color=LOST, transform=ax.get_xaxis_transform(), label=label)
     sizing = result.by_autonomy
     if sizing.watts is not None:
@@ -79,16 +81,15 @@ def plot_survival(ax: Axes, result: PickResult) -> Axes:
     if over is None:
         raise ValueError("there is no map where no pair meets the target, or none was asked for")
     # The target is an edge of the colours, so that what meets it stands out.
-    edges = sorted({*SHARE_STEPS, target.survival, 1.001})
+    edges = [*sorted({*SHARE_STEPS, min(target.survival, 0.9999)}), 1.001]
     norm = BoundaryNorm([max(0.0, edge - 1e-9) for edge in edges], 256)
     at = np.arange(over.watts.size)
     edges_ah = over.battery_ah[0] * (over.battery_ah[1] / over.battery_ah[0]) ** (
         np.arange(over.battery_ah.size + 1) - 0.5
     )
     field = ax.pcolormesh(np.arange(at.size + 1) - 0.5, edges_ah, over.survival, cmap="cividis", norm=norm)
-    shades = [edge for edge in edges if edge <= 1.0]
-    bar = ax.figure.colorbar(field, ax=ax, label=f"share of {noun}s alive", ticks=shades)
-    bar.ax.set_yticklabels([exact_share(edge) for edge in shades])
+    bar = ax.figure.colorbar(field, ax=ax, label=f"share of {noun}s alive", ticks=edges)
+    bar.ax.set_yticklabels([exact_share(min(edge, 1.0)) for edge in edges])
     place = {float(watts): k for k, watts in enumerate(over.watts)}
     watts, ah = _points(result.pairs)
     asked = any(load.skip_below_soc is not None for load in result.robot.loads)
@@ -105,13 +106,15 @@ def plot_survival(ax: Axes, result: PickResult) -> Axes:
 
 def _plot_pairs(ax: Axes, result: PickResult, kind: str, pairs: tuple[Pair, ...]) -> None:
     """One frontier; hollow where other years do not bear a pair out."""
-    colour, line = KIND_STYLES[kind]
+    colour, line, mark, size = KIND_STYLES[kind]
     watts, ah = _points(pairs)
-    ax.plot(watts, ah, line, marker="o", color=colour, label=f"smallest battery, {kind}")
+    if not watts:
+        return
+    ax.plot(watts, ah, line, marker=mark, markersize=size, color=colour, label=f"smallest battery, {kind}")
     doubted = _points(tuple(pair for pair in pairs if fails_elsewhere(pair, result.robot.target)))
     if doubted[0]:
         label = f"{kind}: misses it in other {lifetime(result.robot)}s"
-        ax.plot(*doubted, marker="o", linestyle="none", color=colour, mfc="white", label=label)
+        ax.plot(*doubted, marker=mark, markersize=size, linestyle="none", color=colour, mfc="white", label=label)
 
 
 def _plain_log(ax: Axes) -> None:
@@ -134,4 +137,4 @@ def _points(pairs: tuple[Pair, ...]) -> tuple[list[float], list[float]]:
 def _mark_taken(ax: Axes, result: PickResult) -> None:
     taken = result.recommended
     if taken is not None:
-        ax.plot([taken.watts], [taken.battery_ah], "*", markersize=16, color=SERVED, label="the pair to take")
+        ax.plot([taken.watts], [taken.battery_ah], "*", markersize=12, color=SERVED, label="the pair to take")

@@ -83,7 +83,7 @@ def plot_spells(ax: Axes, result: SurveyResult) -> Axes:
     for spell, level in zip(result.dark_spells, mean, strict=True):
         began = f"from {date_text(spell.start, result.weather)}"
         ax.annotate(began, (spell.days, level), xytext=(4, -12), textcoords="offset points", fontsize=8)
-    ax.set_xlim(0, days.max() * 1.15)
+    ax.set_xlim(0, days.max() * 1.25)
     ax.set_ylim(0)
     ax.set_xlabel("days in a row")
     ax.set_ylabel("mean light\n[kWh/m2 a day]")

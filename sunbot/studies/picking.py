@@ -228,7 +228,7 @@ def _trade(pairs: tuple[Pair, ...], best: Pair) -> str:
 def _edge(pairs: tuple[Pair, ...], best: Pair) -> str:
     """That the pair stands at the end of the wattages tried, if it does."""
     if len(pairs) == 1:
-        return "; no other panel was tried, --watts names them"
+        return "; no other panel was tried, --watts names more"
     for end, extreme, beyond in ((0, "smallest", "smaller"), (-1, "largest", "larger")):
         if best is pairs[end]:
             return f"; it is the {extreme} panel tried: {beyond} ones were not tried, --watts names them"

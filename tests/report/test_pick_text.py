@@ -14,7 +14,7 @@ from matplotlib.figure import Figure
 
 from sunbot.cli import cli
 from sunbot.inputs import load_robot
-from sunbot.report.pick_plots import plot_frontier, plot_survival
+from sunbot.report.pick_plots import pick_figure, plot_frontier, plot_survival
 from sunbot.report.pick_text import pick_text
 from sunbot.report.progress import Progress, duration
 from sunbot.sky import weather_for
@@ -136,6 +136,65 @@ def test_the_plots_draw_the_pairs_with_units_on_the_axes(result):
     plot_survival(lower, result)
     assert lower.collections[0].get_array().size == result.survival_map.survival.size
     assert lower.get_ylabel() == "battery when new [Ah]"
+
+
+def tick_labels(axis):
+    axis.get_figure().draw_without_rendering()
+    low, high = sorted(axis.get_view_interval())
+    return [tick.label1.get_text() for tick in axis.get_major_ticks() if low <= tick.get_loc() <= high]
+
+
+def test_a_single_wattage_is_a_column_of_the_map_not_a_blank(robot_file):
+    """The field reaches half a step to either side; the axis of batteries has plain numbers."""
+    robot = load_robot(robot_file)
+    found = pick(robot, watts=(60.0,), weather=weather_for(robot.site, years=2, seed=1), also=("map",))
+    ax = plot_survival(Figure().subplots(), found)
+    box = ax.collections[0].get_datalim(ax.transData)
+    assert (box.x0, box.x1) == (-0.5, 0.5)
+    over = found.survival_map.battery_ah
+    assert box.y0 < over[0] < over[-1] < box.y1
+    labels = tick_labels(ax.yaxis)
+    assert len(labels) >= 2
+    assert all(float(label) > 0 for label in labels)
+
+
+def test_the_map_says_what_its_colours_leave_out(result, robot_file):
+    """Where work is asked for, being alive is not meeting the target."""
+    assert "work" not in plot_survival(Figure().subplots(), result).get_title(loc="left")
+    load = result.robot.loads[0].model_copy(update={"skip_below_soc": 0.4, "name": "camera"})
+    working = replace(result, robot=result.robot.model_copy(update={"loads": (*result.robot.loads, load)}))
+    ax = plot_survival(Figure().subplots(), working)
+    assert "work may still fall short" in ax.get_title(loc="left")
+    assert "work included" in ax.get_legend().get_texts()[0].get_text()
+
+
+def test_the_target_is_told_exactly_beside_the_colours(result):
+    """An edge of the colours at 94.5 % is labelled so."""
+    target = result.robot.target.model_copy(update={"survival": 0.945})
+    odd = replace(result, robot=result.robot.model_copy(update={"target": target}))
+    ax = plot_survival(Figure().subplots(), odd)
+    bar = next(other for other in ax.figure.axes if other is not ax)
+    assert [label.get_text() for label in bar.get_yticklabels()][-3:] == ["90%", "94.5%", "100%"]
+
+
+def test_no_empty_frame_where_no_pair_meets_the_target(robot_file):
+    """One plot: the wattages that have no battery, and the range tried."""
+    robot = load_robot(robot_file)
+    weather = weather_for(robot.site, years=2, seed=1)
+    found = pick(robot, watts=(1.0, 2.0), battery_ah=(1.0, 2.0), weather=weather, also=("map",))
+    (ax,) = pick_figure(found).axes
+    (marks,) = [line for line in ax.lines if line.get_marker() == "x"]
+    assert list(marks.get_xdata()) == [1.0, 2.0]
+    assert "no battery from 1 to 2 Ah does" in marks.get_label()
+    assert not any("smallest" in text.get_text() for text in ax.get_legend().get_texts())
+
+
+def test_pairs_that_fail_in_other_years_are_hollow(result):
+    pairs = tuple(pair if pair.battery_ah is None else replace(pair, confirmed=0.5) for pair in result.pairs)
+    ax = plot_frontier(Figure().subplots(), replace(result, pairs=pairs))
+    (hollow,) = [line for line in ax.lines if "misses it in other years" in line.get_label()]
+    assert list(hollow.get_xdata()) == [pair.watts for pair in pairs if pair.battery_ah is not None]
+    assert hollow.get_markerfacecolor() == "white"
 
 
 def test_the_command_prints_one_document_and_writes_table_and_picture(robot_file, tmp_path):

@@ -194,9 +194,53 @@ def test_spell_frequency_draws_the_yearly_lows(found):
 
 def test_calendar_bars_stand_where_the_months_are(found):
     ax = season_plots.plot_calendar(Figure().subplots(), found)
-    heights = {round(bar.get_x() + bar.get_width() / 2): bar.get_height() for bar in ax.patches}
+    heights = {round(bar.get_x() + bar.get_width() / 2): bar.get_height() for bar in ax.containers[0]}
     assert heights == {e.month - 1: pytest.approx(e.minutes_per_day) for e in found.calendar.entries}
     assert "minutes" in ax.get_ylabel()
+
+
+def test_months_not_out_are_marked_in_the_calendar(found):
+    """Ten months of grey with words, two without."""
+    ax = season_plots.plot_calendar(Figure().subplots(), found)
+    marked = {round(text.get_position()[0]) for text in ax.texts if text.get_text() == "not out"}
+    assert marked == set(range(12)) - {9, 10}
+
+
+def test_no_legend_of_the_sheet_lies_on_its_axes(found):
+    """But for the field of the sun, whose legend stands below."""
+    figure = season_plots.season_figure(found)
+    figure.draw_without_rendering()
+    above = 0
+    for ax in figure.axes:
+        legend = ax.get_legend()
+        if legend is not None:
+            box, frame = legend.get_window_extent(), ax.get_window_extent()
+            assert box.y0 >= frame.y1 - 0.5 or box.y1 <= frame.y0
+            above += box.y0 >= frame.y1 - 0.5
+    assert above == 6
+
+
+def test_the_sheet_has_no_blank_row(found):
+    """What does not apply leaves no gap: behind a window there are three rows, an odd last plot has its row alone."""
+    figure = season_plots.season_figure(replace(found, sun=None, headings=()))
+    assert figure.axes[0].get_gridspec().nrows == 3
+    odd = season_plots.season_figure(replace(found, sun=None, headings=(), calendar=None))
+    assert odd.axes[0].get_gridspec().nrows == 3
+    last = odd.axes[-1].get_subplotspec()
+    assert (last.colspan.start, last.colspan.stop) == (0, 2)
+
+
+def test_a_load_can_have_any_name(found):
+    """Dollars in a legend are dollars."""
+    entries = tuple(replace(entry, load="$x^{$ arm") for entry in found.calendar.entries)
+    figure = Figure()
+    season_plots.plot_calendar(figure.subplots(), replace(found, calendar=replace(found.calendar, entries=entries)))
+    figure.draw_without_rendering()
+
+
+def test_plots_say_on_how_many_years_they_stand(found):
+    ax = season_plots.plot_headings(Figure().subplots(), found)
+    assert "means of all 5 years" in ax.get_title(loc="left")
 
 
 def test_levers_are_ranked_bars(found):
