@@ -63,7 +63,7 @@ def headed(ax: Axes, title: str, *, handles: Sequence[Any] | None = None, ncols:
             borderpad=0.2,
             borderaxespad=0.2,
             handlelength=1.6,
-            columnspacing=1.4,
+            columnspacing=1.0,
         )
 
 
@@ -83,6 +83,7 @@ def plot_months(ax: Axes, result: CheckResult) -> Axes:
             label="months with an outage",
         )
     ax.set_xticks(at, MONTH_NAMES)
+    ax.set_xlim(-0.6, 11.6)
     ax.set_ylabel("energy at the battery [Wh/day]")
     headed(ax, "Harvest and demand, mean day of each month")
     return ax

@@ -179,6 +179,7 @@ def plot_headings(ax: Axes, result: SeasonResult) -> Axes:
         nose = "" if cost.heading_deg is None else f" (nose to {cost.heading_deg:g} deg)"
         ax.plot(np.arange(12), share, color=shade, marker=mark, markersize=4, linewidth=1.2, label=cost.policy + nose)
     ax.set_xticks(np.arange(12), MONTH_NAMES)
+    ax.set_xlim(-0.6, 11.6)
     ax.set_ylim(0)
     ax.margins(y=0.15)
     ax.set_ylabel("harvest over that of the best fixed heading")
@@ -207,8 +208,7 @@ def plot_sun_field(ax: Axes, result: SeasonResult) -> Axes:
     shades = [Patch(color=_SUN, label="sun"), Patch(color=_HIDDEN, label="behind the horizon")]
     if result.robot.panels[0].obstructions:
         shades.append(Patch(color=LOST, label="behind the robot's own parts"))
-    ax.legend(handles=shades, fontsize=8, ncols=3, loc="upper center", bbox_to_anchor=(0.5, -0.12), frameon=False)
-    ax.set_title("When the sun reaches the robot", loc="left", fontsize=10)
+    headed(ax, "When the sun reaches the robot", handles=shades)
     return ax
 
 

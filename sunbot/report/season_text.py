@@ -139,7 +139,7 @@ def _mount(result: SeasonResult) -> str:
     gained = "" if math.isnan(gain) else f" ({gain:+.0%})"
     filed = f"{panel.tilt_deg:.0f}" + (f" leaning {panel.azimuth_deg:.0f}" if robot.heading == "fixed" else "")
     return (
-        f"Best mount of {name} for the worst month, {looked_at(result)}: \n"
+        f"Best mount of {name} for the worst month, {looked_at(result)}:\n"
         f"  tilt {mount.tilt_deg:.0f} deg{lean}\n"
         f"  filed: {filed}; harvest over demand in the worst month {mount.worst_ratio:.2f} instead of "
         f"{mount.worst_ratio_filed:.2f}{gained}"
