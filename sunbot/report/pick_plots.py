@@ -6,7 +6,6 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from .pick_text import fails_elsewhere
 from .plots import ASKED, LIGHT, LOST, MUTED, SERVED, headed
 from .words import drawable, exact_share, lifetime
 
@@ -111,7 +110,7 @@ def _plot_pairs(ax: Axes, result: PickResult, kind: str, pairs: tuple[Pair, ...]
     if not watts:
         return
     ax.plot(watts, ah, line, marker=mark, markersize=size, color=colour, label=f"smallest battery, {kind}")
-    doubted = _points(tuple(pair for pair in pairs if fails_elsewhere(pair, result.robot.target)))
+    doubted = _points(tuple(pair for pair in pairs if pair.confirmed_met is False))
     if doubted[0]:
         label = f"{kind}: misses it in other {lifetime(result.robot)}s"
         ax.plot(*doubted, marker=mark, markersize=size, linestyle="none", color=colour, mfc="white", label=label)

@@ -23,6 +23,7 @@ class Pair:
 
     survival : share of years alive. confirmed : the same in as many other years; None where there are none.
     work_done : in the worst month; None: none asked. mass_kg, price : of panel and battery; None: the file gives none.
+    confirmed_met : whether those other years meet the whole target, work included; None where there are none.
     """
 
     watts: float
@@ -32,6 +33,7 @@ class Pair:
     work_done: float | None = None
     mass_kg: float | None = None
     price: float | None = None
+    confirmed_met: bool | None = None
 
 
 @dataclass(frozen=True)

@@ -130,8 +130,11 @@ class _Search:
         most_ah = np.inf if self.battery_ah is None else self.battery_ah[1]
         taken, step = ladder.taken(chosen[1], None if there is None else there[-STEPS_UP:], most_ah=most_ah)
         if there is not None:
-            confirmed = {int(at): pair.survival for at, pair in zip(have, there, strict=False)}
-            pairs = tuple(replace(pair, confirmed=confirmed.get(at)) for at, pair in enumerate(pairs))
+            seen = {int(at): here for at, here in zip(have, there, strict=False)}
+            pairs = tuple(
+                replace(pair, confirmed=seen[at].survival, confirmed_met=seen[at].met) if at in seen else pair
+                for at, pair in enumerate(pairs)
+            )
         return _Found(frontier, within, pairs, short, taken, ladder.neighbours(step))
 
 

@@ -108,20 +108,30 @@ def test_a_panel_without_a_battery_says_what_was_tried_and_what_fails(robot_file
 
 def test_pairs_that_fail_in_other_years_are_marked(result):
     """A star and what it means; no star, no legend."""
-    assert result.robot.target.survival == 0.6
     first, *rest = [pair for pair in result.pairs if pair.battery_ah is not None]
-    pairs = (replace(first, confirmed=0.5), *(replace(pair, confirmed=1.0) for pair in rest))
-    found = replace(result, pairs=pairs)
-    text = pick_text(found)
+    failing, passing = {"confirmed": 0.5, "confirmed_met": False}, {"confirmed": 1.0, "confirmed_met": True}
+    pairs = (replace(first, **failing), *(replace(pair, **passing) for pair in rest))
+    text = pick_text(replace(result, pairs=pairs))
     assert text.count("50%*") == 1
-    assert "* alive in fewer than 60% of the other years" in text
-    passed = replace(result, pairs=tuple(replace(pair, confirmed=0.6) for pair in pairs))
+    assert "* misses the target in the other years" in text
+    passed = replace(result, pairs=tuple(replace(pair, **passing) for pair in pairs))
     assert "*" not in pick_text(passed)
+
+
+def test_a_pair_whose_work_falls_short_in_other_years_is_marked_too(result):
+    """Alive in all of them, and yet no pair to take."""
+    pairs = tuple(
+        pair if pair.battery_ah is None else replace(pair, confirmed=1.0, confirmed_met=False) for pair in result.pairs
+    )
+    assert "100%*" in pick_text(replace(result, pairs=pairs))
 
 
 def test_shares_of_pairs_are_not_rounded_across_the_target(result):
     """59.8 % of years is not 60."""
-    pairs = tuple(pair if pair.battery_ah is None else replace(pair, confirmed=0.598) for pair in result.pairs)
+    pairs = tuple(
+        pair if pair.battery_ah is None else replace(pair, confirmed=0.598, confirmed_met=False)
+        for pair in result.pairs
+    )
     assert "59.8%*" in pick_text(replace(result, pairs=pairs))
 
 
@@ -190,7 +200,7 @@ def test_no_empty_frame_where_no_pair_meets_the_target(robot_file):
 
 
 def test_pairs_that_fail_in_other_years_are_hollow(result):
-    pairs = tuple(pair if pair.battery_ah is None else replace(pair, confirmed=0.5) for pair in result.pairs)
+    pairs = tuple(pair if pair.battery_ah is None else replace(pair, confirmed_met=False) for pair in result.pairs)
     ax = plot_frontier(Figure().subplots(), replace(result, pairs=pairs))
     (hollow,) = [line for line in ax.lines if "misses it in other years" in line.get_label()]
     assert list(hollow.get_xdata()) == [pair.watts for pair in pairs if pair.battery_ah is not None]
@@ -205,7 +215,9 @@ def test_the_command_prints_one_document_and_writes_table_and_picture(robot_file
     document = json.loads(done.stdout)
     assert [pair["watts"] for pair in document["pairs"]] == [40.0, 80.0]
     assert document["inputs"]["years"] == 2
-    assert csv.read_text(encoding="utf-8").startswith("watts,battery_ah,survival,confirmed,work_done,mass_kg,price\n")
+    assert csv.read_text(encoding="utf-8").startswith(
+        "watts,battery_ah,survival,confirmed,work_done,mass_kg,price,confirmed_met\n"
+    )
     assert plot.read_bytes().startswith(b"\x89PNG")
 
 

@@ -77,7 +77,23 @@ def test_the_share_in_other_years_is_what_check_finds_there(robots):
     others = other_years(result.weather, filed.site, seed=1)
     assert not np.allclose(others.table["ghi"], result.weather.table["ghi"])
     sized = resized(filed, watts=40.0, battery_ah=pair.battery_ah)
-    assert check(sized, weather=others).verdict.survival[0] == pair.confirmed
+    there = check(sized, weather=others)
+    assert there.verdict.survival[0] == pair.confirmed
+    assert there.met == pair.confirmed_met
+
+
+def test_a_shortfall_is_what_check_finds_with_the_largest_battery(robots, place):
+    """Of a panel for which no battery in range does: the share alive with the largest one, below the target."""
+    filed = robots.robot()
+    result = pick(filed, watts=(1.0, 40.0), battery_ah=(0.5, 1.0), weather=place)
+    dark, short = result.shortfalls
+    assert (dark.watts, dark.battery_ah, dark.survival) == (1.0, None, None)
+    assert (short.watts, short.battery_ah) == (40.0, 1.0)
+    found = check(resized(filed, watts=40.0, battery_ah=1.0), weather=place)
+    assert short.survival == float(found.verdict.survival[0]) < filed.target.survival
+    # Of the panel no battery was tried for, even the largest that is looked for without a range does not do.
+    most_ah = pick(filed, watts=(40.0,), weather=place).battery_range_ah[1]
+    assert not check(resized(filed, watts=1.0, battery_ah=most_ah), weather=place).met
 
 
 def test_a_robot_is_held_to_the_target_in_other_years_too(robots):
@@ -115,7 +131,7 @@ def test_the_map_agrees_with_the_pairs(picked):
 def test_the_words_of_the_document(picked):
     """JSON words as promised; a pair out of range has a battery of null."""
     document = picked.to_dict()
-    names = {"watts", "battery_ah", "survival", "confirmed", "work_done", "mass_kg", "price"}
+    names = {"watts", "battery_ah", "survival", "confirmed", "work_done", "mass_kg", "price", "confirmed_met"}
     assert set(document["pairs"][0]) == names
     assert set(document["recommended"]) >= {"watts", "battery_ah", "confirmed", "why"}
     assert set(document["by_autonomy"]) >= {"watts", "battery_ah"}
