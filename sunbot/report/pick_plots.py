@@ -80,15 +80,16 @@ def plot_survival(ax: Axes, result: PickResult) -> Axes:
     if over is None:
         raise ValueError("there is no map where no pair meets the target, or none was asked for")
     # The target is an edge of the colours, so that what meets it stands out.
-    edges = [*sorted({*SHARE_STEPS, min(target.survival, 0.9999)}), 1.001]
+    edges = [*sorted({*SHARE_STEPS, target.survival}), 1.001]
+    marked = edges if target.survival < 1.0 else edges[:-1]
     norm = BoundaryNorm([max(0.0, edge - 1e-9) for edge in edges], 256)
     at = np.arange(over.watts.size)
     edges_ah = over.battery_ah[0] * (over.battery_ah[1] / over.battery_ah[0]) ** (
         np.arange(over.battery_ah.size + 1) - 0.5
     )
     field = ax.pcolormesh(np.arange(at.size + 1) - 0.5, edges_ah, over.survival, cmap="cividis", norm=norm)
-    bar = ax.figure.colorbar(field, ax=ax, label=f"share of {noun}s alive", ticks=edges)
-    bar.ax.set_yticklabels([exact_share(min(edge, 1.0)) for edge in edges])
+    bar = ax.figure.colorbar(field, ax=ax, label=f"share of {noun}s alive", ticks=marked)
+    bar.ax.set_yticklabels([exact_share(min(edge, 1.0)) for edge in marked])
     place = {float(watts): k for k, watts in enumerate(over.watts)}
     watts, ah = _points(result.pairs)
     asked = any(load.skip_below_soc is not None for load in result.robot.loads)

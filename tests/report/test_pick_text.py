@@ -178,13 +178,16 @@ def test_the_map_says_what_its_colours_leave_out(result, robot_file):
     assert "work included" in ax.get_legend().get_texts()[0].get_text()
 
 
-def test_the_target_is_told_exactly_beside_the_colours(result):
-    """An edge of the colours at 94.5 % is labelled so."""
-    target = result.robot.target.model_copy(update={"survival": 0.945})
+@pytest.mark.parametrize(
+    ("survival", "top"), [(0.945, ["90%", "94.5%", "100%"]), (1.0, ["80%", "90%", "100%"])], ids=["odd", "all"]
+)
+def test_the_target_is_told_exactly_beside_the_colours(result, survival, top):
+    """An edge of the colours at 94.5 % is labelled so, and all years are 100 % once."""
+    target = result.robot.target.model_copy(update={"survival": survival})
     odd = replace(result, robot=result.robot.model_copy(update={"target": target}))
     ax = plot_survival(Figure().subplots(), odd)
     bar = next(other for other in ax.figure.axes if other is not ax)
-    assert [label.get_text() for label in bar.get_yticklabels()][-3:] == ["90%", "94.5%", "100%"]
+    assert [label.get_text() for label in bar.get_yticklabels()][-3:] == top
 
 
 def test_no_empty_frame_where_no_pair_meets_the_target(robot_file):
