@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from .text import MONTH_NAMES, OUT_NAMES
+from .words import counted, drawable, exact_share, lifetime
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -18,6 +20,8 @@ if TYPE_CHECKING:
 # Colours that stay apart for colour-blind readers and in grey (Okabe & Ito's set, published 2008).
 LIGHT, ASKED, SERVED, LOST, MUTED = "#E69F00", "#0072B2", "#009E73", "#D55E00", "#8C8C8C"
 FAN_PERCENT = (10, 50, 90)
+LEGEND_ROW_PT = 12.5
+"""Height of a row of a legend."""
 
 
 def check_figure(result: CheckResult) -> Figure:
@@ -29,14 +33,38 @@ def check_figure(result: CheckResult) -> Figure:
     plot_months(months, result)
     plot_charge(charge, result)
     plot_flows(flows, result)
-    verdict = result.verdict
-    figure.suptitle(
-        f"{result.robot.name} at {result.robot.site.name}: alive in {int(verdict.years_survived[0])} of "
-        f"{verdict.years} {'year' if verdict.years == 1 else 'years'}, "
-        f"target {'met' if result.met else 'not met'}\n{result.weather.origin}",
-        fontsize=11,
-    )
+    figure.suptitle(sheet_title(result), fontsize=11)
     return figure
+
+
+def sheet_title(result: CheckResult) -> str:
+    """Who, where, the answer, and the weather it stands on."""
+    robot, verdict = result.robot, result.verdict
+    alive = f"alive in {int(verdict.years_survived[0])} of {counted(verdict.years, lifetime(robot))}"
+    return drawable(
+        f"{robot.name} at {robot.site.name}: {alive}, target {'met' if result.met else 'not met'}\n"
+        f"{result.weather.origin}"
+    )
+
+
+def headed(ax: Axes, title: str, *, handles: Sequence[Any] | None = None, ncols: int = 4) -> None:
+    """A title, and the legend in a row between it and the axes, where it covers nothing that is drawn."""
+    handles = ax.get_legend_handles_labels()[0] if handles is None else handles
+    rows = -(-len(handles) // ncols)
+    ax.set_title(drawable(title), loc="left", fontsize=10, pad=6.0 + LEGEND_ROW_PT * rows)
+    if handles:
+        ax.legend(
+            handles=handles,
+            loc="lower left",
+            bbox_to_anchor=(0.0, 1.0),
+            ncols=ncols,
+            fontsize=8,
+            frameon=False,
+            borderpad=0.2,
+            borderaxespad=0.2,
+            handlelength=1.6,
+            columnspacing=1.0,
+        )
 
 
 def plot_months(ax: Axes, result: CheckResult) -> Axes:
@@ -55,31 +83,36 @@ def plot_months(ax: Axes, result: CheckResult) -> Axes:
             label="months with an outage",
         )
     ax.set_xticks(at, MONTH_NAMES)
+    ax.set_xlim(-0.6, 11.6)
     ax.set_ylabel("energy at the battery [Wh/day]")
-    ax.set_title("Harvest and demand, mean day of each month", loc="left", fontsize=10)
-    ax.legend(frameon=False)
+    headed(ax, "Harvest and demand, mean day of each month")
     return ax
 
 
 def plot_charge(ax: Axes, result: CheckResult) -> Axes:
     """Lowest charge of each day through the energy year: the band and median over years, and the worst year."""
-    lowest, ticks = daily_lowest_charge(result)
+    (lowest, ticks), noun = daily_lowest_charge(result), lifetime(result.robot)
     at = np.arange(len(lowest))
     if lowest.shape[1] > 1:
         low, middle, high = np.nanpercentile(lowest, FAN_PERCENT, axis=1)
-        ax.fill_between(at, low, high, color=ASKED, alpha=0.25, linewidth=0, label="80 % of years")
-        ax.plot(at, middle, color=ASKED, linewidth=1.2, label="median year")
-        ax.plot(at, np.nanmin(lowest, axis=1), color=LOST, linewidth=0.8, label="lowest of all years")
+        ax.fill_between(at, low, high, color=ASKED, alpha=0.25, linewidth=0, label=f"80 % of {noun}s")
+        ax.plot(at, middle, color=ASKED, linewidth=1.2, label=f"median {noun}")
+        ax.plot(at, np.nanmin(lowest, axis=1), color=LOST, linewidth=0.8, label=f"lowest of all {noun}s")
     else:
         ax.plot(at, lowest[:, 0], color=ASKED, linewidth=1.0, label="lowest of each day")
     cutoff = result.robot.battery.cutoff_soc
-    ax.axhline(cutoff or 0.0, color=MUTED, linestyle="--", linewidth=0.8, label=f"cut-off at {cutoff:.0%}, warm")
+    ax.axhline(
+        cutoff or 0.0,
+        color=MUTED,
+        linestyle="--",
+        linewidth=0.8,
+        label=f"cut-off at {exact_share(cutoff or 0.0)}, warm",
+    )
     ax.set_xticks([day for day, _ in ticks], [name for _, name in ticks])
     ax.set_xlim(0, max(len(lowest) - 1, 1))
     ax.set_ylim(0, 1.02)
     ax.set_ylabel("charge of the worn battery [share]")
-    ax.set_title("Lowest charge of each day, through the energy year", loc="left", fontsize=10)
-    ax.legend(frameon=False, ncols=2, loc="lower right")
+    headed(ax, "Lowest charge of each day, through the energy year")
     return ax
 
 

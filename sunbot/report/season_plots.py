@@ -7,8 +7,10 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from .plots import ASKED, LIGHT, LOST, MUTED, SERVED, plot_charge, plot_months
+from .plots import ASKED, LIGHT, LOST, MUTED, SERVED, headed, plot_charge, plot_months, sheet_title
+from .season_text import looked_at, months_out
 from .text import MONTH_NAMES
+from .words import counted, date_text, drawable, lifetime
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -26,28 +28,30 @@ def season_figure(result: SeasonResult) -> Figure:
     """The whole answer on one sheet; what does not apply to the robot is left out."""
     from matplotlib.figure import Figure
 
-    figure = Figure(figsize=(14.0, 18.0), layout="constrained")
-    grid = figure.add_gridspec(4, 2)
-    plot_months(figure.add_subplot(grid[0, 0]), result.check)
-    plot_charge(figure.add_subplot(grid[0, 1]), result.check)
-    plot_spell_frequency(figure.add_subplot(grid[1, 0]), result)
-    plot_fortnight(figure.add_subplot(grid[1, 1]), result)
-    plot_levers(figure.add_subplot(grid[2, 0]), result)
+    plots: list[Callable[[Axes, SeasonResult], Axes]] = [
+        lambda ax, of: plot_months(ax, of.check),
+        lambda ax, of: plot_charge(ax, of.check),
+        plot_spell_frequency,
+        plot_fortnight,
+        plot_levers,
+    ]
     if result.calendar is not None:
-        plot_calendar(figure.add_subplot(grid[2, 1]), result)
+        plots.append(plot_calendar)
     if result.headings:
-        plot_headings(figure.add_subplot(grid[3, 0]), result)
+        plots.append(plot_headings)
+    count = len(plots) + (result.sun is not None)
+    rows = -(-count // 2)
+    figure = Figure(figsize=(14.0, 4.5 * rows), layout="constrained")
+    grid = figure.add_gridspec(rows, 2)
+    # The last one has the row to itself where their number is odd.
+    cells = [grid[at // 2, :] if at == count - 1 and at % 2 == 0 else grid[at // 2, at % 2] for at in range(count)]
+    for plot, cell in zip(plots, cells, strict=False):
+        plot(figure.add_subplot(cell), result)
     if result.sun is not None:
-        parts = grid[3, 1].subgridspec(1, 2, width_ratios=(3.0, 1.0), wspace=0.02)
+        parts = cells[-1].subgridspec(1, 2, width_ratios=(3.0, 1.0), wspace=0.02)
         plot_sun_field(figure.add_subplot(parts[0]), result)
         plot_sun_lost(figure.add_subplot(parts[1]), result)
-    verdict = result.check.verdict
-    figure.suptitle(
-        f"{result.robot.name} at {result.robot.site.name}: alive in {int(verdict.years_survived[0])} of "
-        f"{verdict.years} {'year' if verdict.years == 1 else 'years'}, "
-        f"target {'met' if result.met else 'not met'}\n{result.check.weather.origin}",
-        fontsize=12,
-    )
+    figure.suptitle(sheet_title(result.check), fontsize=12)
     return figure
 
 
@@ -66,7 +70,7 @@ def plot_spell_frequency(ax: Axes, result: SeasonResult) -> Axes:
         at = np.geomspace(1.2, n_years + 1, 40)
         for spell, shade, mark in zip(result.dark_spells, _SHADES, _MARKS, strict=False):
             lows, _ = lowest_sums(result.daily_harvest_wh, spell.days, ring=result.robot.deployment is None)
-            name = f"{spell.days} day{'s' if spell.days > 1 else ''}"
+            name = f"{counted(spell.days, 'day')} in a row"
             ax.plot(periods, np.sort(lows) / spell.days, color=shade, marker=mark, markersize=3, linestyle="none")
             ax.plot(at, [fitted_low(lows, years) / spell.days for years in at], color=shade, linewidth=1, label=name)
         ax.set_xscale("log")
@@ -74,8 +78,7 @@ def plot_spell_frequency(ax: Axes, result: SeasonResult) -> Axes:
         ax.set_xticks(ticks, [str(years) for years in ticks])
         ax.minorticks_off()
         ax.set_xlabel("a year as dark comes once in [years]")
-        ax.legend(frameon=False, title="in a row", ncols=2)
-        ax.set_title("Dark spells: how dark, how long, how often", loc="left", fontsize=10)
+        headed(ax, "Dark spells: how dark, how long, how often", ncols=3)
     ax.set_ylim(0)
     ax.set_ylabel("harvest, mean of the spell [Wh/day]")
     return ax
@@ -97,8 +100,7 @@ def plot_fortnight(ax: Axes, result: SeasonResult) -> Axes:
     ax.set_xlim(0, days[-1])
     ax.set_xlabel("days since its start")
     lines = [*ax.get_legend_handles_labels()[0], *charge.get_legend_handles_labels()[0]]
-    charge.legend(handles=lines, frameon=False, ncols=4, loc="upper center", fontsize=8)
-    ax.set_title(f"The worst fortnight, from {result.worst.start}", loc="left", fontsize=10)
+    headed(ax, f"The worst fortnight, from {date_text(result.worst.start, result.check.weather)}", handles=lines)
     return ax
 
 
@@ -113,19 +115,25 @@ def plot_calendar(ax: Axes, result: SeasonResult) -> Axes:
         entries = [entry for entry in calendar.entries if entry.load == name]
         at = np.array([entry.month - 1 for entry in entries]) - 0.4 + width * (place + 0.5)
         minutes = np.array([entry.minutes_per_day for entry in entries])
-        ax.bar(at, minutes, width * 0.95, color=_SHADES[place % len(_SHADES)], label=name)
+        ax.bar(at, minutes, width * 0.95, color=_SHADES[place % len(_SHADES)], label=drawable(name))
         binds = np.array([calendar.bound[entry.month - 1] for entry in entries])
         ax.plot(at[binds], minutes[binds], linestyle="none", marker="v", color="black", markersize=5)
     ax.plot([], [], linestyle="none", marker="v", color="black", label="more would miss the target")
     ax.set_xticks(np.arange(12), MONTH_NAMES)
     ax.set_xlim(-0.6, 11.6)
-    ax.margins(y=0.25)
+    _mark_not_out(ax, result)
     ax.set_ylim(0, None if calendar.possible else 1)
     ax.set_ylabel("work asked [minutes a day]")
-    ax.legend(frameon=False, ncols=2, fontsize=8, loc="upper right")
     none = "" if calendar.possible else ": none, the target is missed without any"
-    ax.set_title(f"The work each month affords{none}", loc="left", fontsize=10)
+    headed(ax, f"The work each month affords{none}")
     return ax
+
+
+def _mark_not_out(ax: Axes, result: SeasonResult) -> None:
+    """Grey over the months in which the robot is not out: no bar there is not the same as no work."""
+    for at in (month for month, out in enumerate(months_out(result)) if not out):
+        ax.axvspan(at - 0.5, at + 0.5, color=_NIGHT, linewidth=0, zorder=0)
+        ax.text(at, 0.5, "not out", transform=ax.get_xaxis_transform(), rotation=90, ha="center", va="center")
 
 
 def plot_levers(ax: Axes, result: SeasonResult) -> Axes:
@@ -171,11 +179,11 @@ def plot_headings(ax: Axes, result: SeasonResult) -> Axes:
         nose = "" if cost.heading_deg is None else f" (nose to {cost.heading_deg:g} deg)"
         ax.plot(np.arange(12), share, color=shade, marker=mark, markersize=4, linewidth=1.2, label=cost.policy + nose)
     ax.set_xticks(np.arange(12), MONTH_NAMES)
+    ax.set_xlim(-0.6, 11.6)
     ax.set_ylim(0)
     ax.margins(y=0.15)
     ax.set_ylabel("harvest over that of the best fixed heading")
-    ax.legend(frameon=False, fontsize=8, ncols=2, loc="lower right")
-    ax.set_title("What the heading costs", loc="left", fontsize=10)
+    headed(ax, f"What the heading costs, {looked_at(result)}", ncols=3)
     return ax
 
 
@@ -200,8 +208,7 @@ def plot_sun_field(ax: Axes, result: SeasonResult) -> Axes:
     shades = [Patch(color=_SUN, label="sun"), Patch(color=_HIDDEN, label="behind the horizon")]
     if result.robot.panels[0].obstructions:
         shades.append(Patch(color=LOST, label="behind the robot's own parts"))
-    ax.legend(handles=shades, fontsize=8, ncols=3, loc="upper center", bbox_to_anchor=(0.5, -0.12), frameon=False)
-    ax.set_title("When the sun reaches the robot", loc="left", fontsize=10)
+    headed(ax, "When the sun reaches the robot", handles=shades)
     return ax
 
 
@@ -238,7 +245,7 @@ def _moved(result: SeasonResult) -> tuple[Callable[[Lever], float], str]:
     """The first of survival, hours out and work done that any change moves, as a function of a lever, and its label."""
     base = _filed(result)
     if any(lever.survival != base.survival for lever in result.levers):
-        return (lambda lever: lever.survival), "share of years alive"
+        return (lambda lever: lever.survival), f"share of {lifetime(result.robot)}s alive"
     if any(lever.hours_out_per_year != base.hours_out_per_year for lever in result.levers):
         return (lambda lever: lever.hours_out_per_year), _HOURS
     return (lambda lever: 1.0 if lever.work_done is None else lever.work_done), "work done in the worst month"

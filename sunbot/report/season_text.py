@@ -3,25 +3,29 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable, Mapping
 from typing import TYPE_CHECKING
 
 from .spells_text import spells_text
 from .text import MONTH_NAMES, cautions_text, check_head, months_text
 from .window_text import window_text
+from .words import date_text, exact_share, lifetime, printable, share_text
 
 if TYPE_CHECKING:
+    from ..inputs.robot import Target
     from ..studies.seasons import SeasonResult
 
 _NAME_WIDTH = 16
+"""Least width of a column headed by the name of a load."""
 
 
 def season_text(result: SeasonResult) -> str:
     """Months, charge, dark spells, the worst fortnight, work, mount, headings, sun lost, and what moves the answer."""
     parts = [
         check_head(result.check),
-        months_text(result.months),
+        months_text(result.months, work_target=result.robot.target.work_done),
         _fan(result),
-        spells_text(result.dark_spells, rated_w=result.robot.watts),
+        spells_text(result.dark_spells, weather=result.check.weather, rated_w=result.robot.watts),
         _fortnight(result),
         _calendar(result),
         _mount(result),
@@ -31,20 +35,20 @@ def season_text(result: SeasonResult) -> str:
         _levers(result),
         cautions_text(result.cautions),
     ]
-    return "\n\n".join(part for part in parts if part) + "\n"
+    return printable("\n\n".join(part for part in parts if part) + "\n")
 
 
-def _by_month(columns: dict[str, tuple[list[float], str]], *, width: int = 12) -> list[str]:
-    """Rows of a table by month: heads of up to two lines (parted by a line break), then values in their format."""
+def _by_month(columns: Mapping[str, tuple[list[float], Callable[[float], str]]], *, width: int = 12) -> list[str]:
+    """Rows of a table by month: heads of up to two lines (parted by a line break), then values as they are told."""
     heads = [name.split("\n") for name in columns]
     lines = [
         f"  {'':5}" + "".join(f"{(head[line] if line < len(head) else ''):>{width}}" for head in heads)
         for line in range(max(map(len, heads)))
     ]
     for at, month in enumerate(MONTH_NAMES):
-        cells = [(values[at], form) for values, form in columns.values()]
+        cells = [(values[at], told) for values, told in columns.values()]
         if not all(math.isnan(value) for value, _ in cells):
-            shown = ("-" if math.isnan(value) else format(value, form) for value, form in cells)
+            shown = ("-" if math.isnan(value) else told(value) for value, told in cells)
             lines.append(f"  {month:5}" + "".join(f"{cell:>{width}}" for cell in shown))
     return lines
 
@@ -52,27 +56,37 @@ def _by_month(columns: dict[str, tuple[list[float], str]], *, width: int = 12) -
 def _fan(result: SeasonResult) -> str:
     if result.check.verdict.years == 1:
         return ""
-    fan = result.charge_fan
+    fan, noun = result.charge_fan, lifetime(result.robot)
     columns = {
-        "1 year in 10\nbelow": (fan["p10"].tolist(), ".0%"),
-        "half the\nyears below": (fan["p50"].tolist(), ".0%"),
-        "9 in 10\nbelow": (fan["p90"].tolist(), ".0%"),
+        "1 in 10\nbelow": (fan["p10"].tolist(), _charge),
+        "half of them\nbelow": (fan["p50"].tolist(), _charge),
+        "9 in 10\nbelow": (fan["p90"].tolist(), _charge),
     }
-    return "\n".join(["Lowest charge of the month, over the years", *_by_month(columns, width=14)])
+    return "\n".join([f"Lowest charge of the month, over the {noun}s", *_by_month(columns, width=14)])
+
+
+def _charge(soc: float) -> str:
+    return share_text(soc, most=0)
+
+
+def _tenth(value: float) -> str:
+    return f"{value:.1f}"
 
 
 def _fortnight(result: SeasonResult) -> str:
-    worst, step_h = result.worst, result.check.weather.step_h
+    worst, weather = result.worst, result.check.weather
+    days = [date_text(time.date(), weather) for time in worst.steps.index]
+    wide = max(12, *map(len, days))
     rows = [
-        f"The worst fortnight, of the year that goes worst (the one from {worst.year_start}); step by step in --csv",
-        f"  {'day':12}{'harvest Wh':>11}{'asked Wh':>10}{'served Wh':>11}{'lowest charge':>15}{'coldest box':>13}",
+        f"The worst fortnight, of the {lifetime(result.robot)} that goes worst (the one from "
+        f"{date_text(worst.year_start, weather)}); step by step in --csv",
+        f"  {'day':{wide}}{'harvest Wh':>11}{'asked Wh':>10}{'served Wh':>11}{'lowest charge':>15}{'coldest box':>13}",
     ]
-    days = [f"{time:%Y-%m-%d}" for time in worst.steps.index]
     for day, steps in worst.steps.groupby(days, sort=False):
-        energy = steps[["harvest_w", "demand_w", "served_w"]].sum() * step_h
+        energy = steps[["harvest_w", "demand_w", "served_w"]].sum() * weather.step_h
         rows.append(
-            f"  {day:12}{energy['harvest_w']:>11.1f}{energy['demand_w']:>10.1f}"
-            f"{energy['served_w']:>11.1f}{steps['soc'].min():>15.0%}{steps['box_temp_c'].min():>11.0f} C"
+            f"  {day:{wide}}{energy['harvest_w']:>11.1f}{energy['demand_w']:>10.1f}"
+            f"{energy['served_w']:>11.1f}{_charge(steps['soc'].min()):>15}{steps['box_temp_c'].min():>11.0f} C"
         )
     return "\n".join(rows)
 
@@ -82,19 +96,28 @@ def _calendar(result: SeasonResult) -> str:
     if calendar is None:
         return "No load is skippable (skip_below_soc), so there is no work to spread over the year."
     if not calendar.possible:
-        return "Work calendar: the target is missed even without any skippable work; the essential loads must shrink."
+        return (
+            "Work calendar: the target is missed even without any skippable work. Shrink the essential loads, or see\n"
+            "  sunbot pick for a larger panel or battery."
+        )
     names = list(dict.fromkeys(entry.load for entry in calendar.entries))
+    widths = [max(_NAME_WIDTH, len(name) + 2) for name in names]
     rows = [
-        f"The work each month affords: minutes a day to ask for, {target.work_done:.0%} of which get done "
+        f"The work each month affords: minutes a day to ask for, {exact_share(target.work_done)} of which get done "
         f"(steps of {calendar.step_min:g} min)",
-        f"  {'':5}" + "".join(f"{name[: _NAME_WIDTH - 2]:>{_NAME_WIDTH}}" for name in names),
+        f"  {'':5}" + "".join(f"{name:>{width}}" for name, width in zip(names, widths, strict=True)),
     ]
+    out = months_out(result)
     for number, month in enumerate(MONTH_NAMES, start=1):
         minutes = {entry.load: entry.minutes_per_day for entry in calendar.entries if entry.month == number}
-        if minutes:
-            cells = (f"{minutes[name]:.0f}" if name in minutes else "-" for name in names)
-            why = "one step more would miss the target" if calendar.bound[number - 1] else "all of its hours"
-            rows.append(f"  {month:5}" + "".join(f"{cell:>{_NAME_WIDTH}}" for cell in cells) + f"   {why}")
+        if not out[number - 1]:
+            rows.append(f"  {month:5}{'not out':>{widths[0]}}")
+            continue
+        cells = [f"{minutes[name]:.0f}" if name in minutes else "-" for name in names]
+        why = "one step more would miss the target" if calendar.bound[number - 1] else "all of its hours"
+        why = why if minutes else "no work in this month"
+        told = "".join(f"{cell:>{width}}" for cell, width in zip(cells, widths, strict=True))
+        rows.append(f"  {month:5}{told}   {why}")
     if not calendar.confirmed:
         rows.append("  Written into a robot file it just misses the target: take a step less in the tightest month.")
     return "\n".join(rows)
@@ -116,7 +139,8 @@ def _mount(result: SeasonResult) -> str:
     gained = "" if math.isnan(gain) else f" ({gain:+.0%})"
     filed = f"{panel.tilt_deg:.0f}" + (f" leaning {panel.azimuth_deg:.0f}" if robot.heading == "fixed" else "")
     return (
-        f"Best mount of {name} for the worst month: tilt {mount.tilt_deg:.0f} deg{lean}\n"
+        f"Best mount of {name} for the worst month, {looked_at(result)}:\n"
+        f"  tilt {mount.tilt_deg:.0f} deg{lean}\n"
         f"  filed: {filed}; harvest over demand in the worst month {mount.worst_ratio:.2f} instead of "
         f"{mount.worst_ratio_filed:.2f}{gained}"
     )
@@ -132,9 +156,12 @@ def _headings(result: SeasonResult) -> str:
         "turns to sun": "turns to\nthe sun",
         "worst parked": "parks the\nwrong way",
     }
-    columns = {heads[cost.policy]: (cost.harvest_wh_day.tolist(), ".1f") for cost in result.headings}
+    columns = {heads[cost.policy]: (cost.harvest_wh_day.tolist(), _tenth) for cost in result.headings}
     best = next(cost for cost in result.headings if cost.policy == "best fixed")
-    head = f"Harvest by the way the nose is held, Wh/day (best fixed: nose to {best.heading_deg:g} deg from north)"
+    head = (
+        f"Harvest by the way the nose is held, Wh/day, {looked_at(result)} (best fixed: nose to {best.heading_deg:g} "
+        "deg from north)"
+    )
     return "\n".join([head, *_by_month(columns)])
 
 
@@ -147,24 +174,42 @@ def _sun(result: SeasonResult) -> str:
     if not hours[["behind_horizon_h_day", "behind_robot_h_day"]].to_numpy().any():
         return ""
     columns = {
-        "sun up\nh/day": (hours["up_h_day"].tolist(), ".1f"),
-        "behind the\nhorizon": (hours["behind_horizon_h_day"].tolist(), ".1f"),
+        "sun up\nh/day": (hours["up_h_day"].tolist(), _tenth),
+        "behind the\nhorizon": (hours["behind_horizon_h_day"].tolist(), _tenth),
     }
     if result.robot.panels[0].obstructions:
-        columns["behind own\nparts"] = (hours["behind_robot_h_day"].tolist(), ".1f")
+        columns["behind own\nparts"] = (hours["behind_robot_h_day"].tolist(), _tenth)
     return "\n".join(["Hours of sun, whatever the weather, and what stands before it", *_by_month(columns)])
 
 
+def months_out(result: SeasonResult) -> list[bool]:
+    """Which calendar months the robot is out in."""
+    return [not math.isnan(lowest) for lowest in result.months["lowest_soc"]]
+
+
+def looked_at(result: SeasonResult) -> str:
+    """The years on which mounts and headings are compared: fewer than those of the answer where they are generated."""
+    from ..studies.tilts import LOOK_YEARS
+
+    weather = result.check.weather
+    if weather.kind == "generated" and weather.n_years > LOOK_YEARS:
+        return f"means of the first {LOOK_YEARS} of {weather.n_years} years"
+    return "of the one year" if weather.n_years == 1 else f"means of all {weather.n_years} years"
+
+
 def _levers(result: SeasonResult) -> str:
-    filed = result.check.verdict
+    filed, target = result.check.verdict, result.robot.target
     rows = ["What moves the answer, one thing at a time, the strongest first (dirt: points of light lost)"]
-    rows.append(_outcome("as filed", "", filed.survival[0], result.check.outages.hours_per_year, filed.work_done[0]))
+    rows.append(
+        _outcome("as filed", "", filed.survival[0], result.check.outages.hours_per_year, filed.work_done[0], target)
+    )
     for lever in result.levers:
         work = math.nan if lever.work_done is None else lever.work_done
-        rows.append(_outcome(lever.what, lever.change, lever.survival, lever.hours_out_per_year, work))
+        rows.append(_outcome(lever.what, lever.change, lever.survival, lever.hours_out_per_year, work, target))
     return "\n".join(rows)
 
 
-def _outcome(what: str, change: str, survival: float, hours: float, work: float) -> str:
-    done = "" if math.isnan(work) else f"   work done {work:>4.0%}"
-    return f"  {what:10}{change:18}alive {survival:>4.0%}{hours:>10.1f} h out a year{done}"
+def _outcome(what: str, change: str, survival: float, hours: float, work: float, target: Target) -> str:
+    done = "" if math.isnan(work) else f"   work done {share_text(work, target=target.work_done, most=2):>6}"
+    alive = share_text(survival, target=target.survival, most=2)
+    return f"  {what:10}{change:18}alive {alive:>6}{hours:>10.1f} h out a year{done}"

@@ -6,8 +6,9 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from .plots import ASKED, LIGHT, LOST, MUTED
+from .plots import ASKED, LIGHT, LOST, MUTED, headed
 from .text import MONTH_NAMES
+from .words import date_text, drawable
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -25,7 +26,7 @@ def sky_figure(result: SurveyResult) -> Figure:
     plot_month_light(months, result)
     plot_days(days, result)
     plot_spells(spells, result)
-    figure.suptitle(f"{result.site.name}\n{result.weather.origin}", fontsize=11)
+    figure.suptitle(drawable(f"{result.site.name}\n{result.weather.origin}"), fontsize=11)
     return figure
 
 
@@ -49,8 +50,7 @@ def plot_month_light(ax: Axes, result: SurveyResult) -> Axes:
         )
     ax.set_xticks(at, MONTH_NAMES)
     ax.set_ylabel("light on the level\n[kWh/m2 a day]")
-    ax.set_title("Light by month", loc="left", fontsize=10)
-    ax.legend(frameon=False)
+    headed(ax, "Light by month")
     return ax
 
 
@@ -64,7 +64,6 @@ def plot_days(ax: Axes, result: SurveyResult) -> Axes:
         low, middle = np.nanpercentile(daily[:, ~np.isnan(daily).all(axis=0)], (5, 50), axis=0)
         ax.plot(at[: len(middle)], middle, color=LIGHT, linewidth=1.2, label="median day")
         ax.plot(at[: len(low)], low, color=LOST, linewidth=1.2, label="one day in twenty is darker")
-        ax.legend(frameon=False)
     first = np.asarray(result.dates[0]).astype("datetime64[D]")
     months = first.astype("datetime64[M]").astype(int) % 12
     starts = [day for day in range(len(first)) if day == 0 or months[day] != months[day - 1]]
@@ -72,7 +71,7 @@ def plot_days(ax: Axes, result: SurveyResult) -> Axes:
     ax.set_xlim(0, daily.shape[1] - 1)
     ax.set_ylim(0)
     ax.set_ylabel("light on a flat panel\n[kWh/m2 a day]")
-    ax.set_title("Every day of up to twenty years", loc="left", fontsize=10)
+    headed(ax, "Every day of up to twenty years")
     return ax
 
 
@@ -82,8 +81,9 @@ def plot_spells(ax: Axes, result: SurveyResult) -> Axes:
     mean = np.array([spell.wh / spell.days for spell in result.dark_spells]) / 1000.0
     ax.plot(days, mean, color=ASKED, marker="o")
     for spell, level in zip(result.dark_spells, mean, strict=True):
-        ax.annotate(f"from {spell.start}", (spell.days, level), xytext=(4, -12), textcoords="offset points", fontsize=8)
-    ax.set_xlim(0, days.max() * 1.15)
+        began = f"from {date_text(spell.start, result.weather)}"
+        ax.annotate(began, (spell.days, level), xytext=(4, -12), textcoords="offset points", fontsize=8)
+    ax.set_xlim(0, days.max() * 1.25)
     ax.set_ylim(0)
     ax.set_xlabel("days in a row")
     ax.set_ylabel("mean light\n[kWh/m2 a day]")

@@ -9,7 +9,9 @@ from textwrap import fill
 from typing import TYPE_CHECKING
 
 from ..calendar import standard_offset_h
+from ..light.window_light import COATED_FACTOR
 from ..types import Caution
+from .words import counted, date_text, exact_share, lifetime, printable, share_text
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -40,13 +42,13 @@ def check_text(result: CheckResult) -> str:
     parts = [
         check_head(result),
         _nearness(result),
-        months_text(result.months),
+        months_text(result.months, work_target=result.robot.target.work_done),
         _autonomy(result),
         _outages(result),
         _flows(result),
         cautions_text(result.cautions),
     ]
-    return "\n\n".join(part for part in parts if part) + "\n"
+    return printable("\n\n".join(part for part in parts if part) + "\n")
 
 
 def check_head(result: CheckResult) -> str:
@@ -57,24 +59,25 @@ def check_head(result: CheckResult) -> str:
     lines = [
         f"{robot.name} at {robot.site.name}: {'target met' if result.met else 'TARGET NOT MET'}, judged with the worn "
         f"battery ({battery.worn_capacity * battery.capacity_ah:.3g} of {battery.capacity_ah:.3g} Ah)",
-        f"  panel {robot.watts:.4g} W, {robot.controller.kind}, battery {battery.cells_in_series} cells "
+        f"  panel {robot.watts:.4g} W, {robot.controller.kind}, battery {counted(battery.cells_in_series, 'cell')} "
         f"{battery.chemistry}",
         f"  weather: {result.weather.origin}",
         "",
     ]
-    noun = "deployments" if robot.deployment is not None else "years"
-    share = f"  alive in {survived} of {years} {noun}" if years > 1 else _one_year(survived)
+    noun = lifetime(robot)
+    share = f"  alive in {survived} of {years} {noun}s" if years > 1 else f"  {_one(survived)} in the one {noun} tried"
     if result.interval is not None:
-        low, high = result.interval
-        share += f" = {verdict.survival[0]:.0%}, 95 % interval {low:.1%} to {high:.1%}; target {target.survival:.0%}"
+        low, high = (share_text(end, target=target.survival, places=1) for end in result.interval)
+        share += (
+            f" = {share_text(verdict.survival[0], target=target.survival)}, 95 % interval {low} to {high}; "
+            f"target {exact_share(target.survival)}"
+        )
     lines.append(share + _mark(bool(verdict.survival_met[0])))
-    lines.append(f"  with all light 10 % lower: {_alive(result.survival_light_minus_10, years)}")
-    if result.survival_worst_parked is not None:
-        lines.append(f"  parked the wrong way all the time: {_alive(result.survival_worst_parked, years)}")
+    lines += [f"  {change}: {_alive(survival, result)}" for change, survival in _second_opinions(result)]
     if not math.isnan(verdict.work_done[0]):
         lines.append(
-            f"  skippable work done in the worst month: {verdict.work_done[0]:.0%}; target {target.work_done:.0%}"
-            + _mark(bool(verdict.work_met[0]))
+            f"  skippable work done in the worst month: {share_text(verdict.work_done[0], target=target.work_done)}; "
+            f"target {exact_share(target.work_done)}" + _mark(bool(verdict.work_met[0]))
         )
     if result.visits_per_year > 0:
         lines.append(f"  someone has to go there and restart it {_times(result.visits_per_year)} a year")
@@ -107,21 +110,31 @@ def _times(count: float) -> str:
     return f"{count:.2g} times" if count < 10 else f"{count:.0f} times"
 
 
-def _one_year(survived: int) -> str:
-    return f"  {'alive' if survived else 'dies'} in the one year tried"
+def _one(survived: int) -> str:
+    return "alive" if survived else "dies"
 
 
 def _mark(met: bool) -> str:
     return " (met)" if met else " (NOT met)"
 
 
-def _alive(share: float, years: int) -> str:
-    if years == 1:
+def _second_opinions(result: CheckResult) -> list[tuple[str, float]]:
+    """What might be worse than filed, and the share alive then."""
+    found = [("with all light 10 % lower", result.survival_light_minus_10)]
+    if result.survival_worst_parked is not None:
+        found.append(("parked the wrong way all the time", result.survival_worst_parked))
+    if result.survival_coated is not None:
+        found.append((f"should the coated glass pass {COATED_FACTOR:g} times less light", result.survival_coated))
+    return found
+
+
+def _alive(share: float, result: CheckResult) -> str:
+    if result.verdict.years == 1:
         return "still alive" if share == 1 else "dies"
-    return f"alive in {share:.0%} of years"
+    return f"alive in {share_text(share, target=result.robot.target.survival)} of {lifetime(result.robot)}s"
 
 
-def months_text(months: pd.DataFrame) -> str:
+def months_text(months: pd.DataFrame, *, work_target: float | None = None) -> str:
     """The table by month and the months in deficit."""
     head = (
         f"  {'':5}{'light on':>10}{'harvest':>9}{'demand':>9}{'harvest':>9}{'lowest':>8}{'hours':>8}{'work':>7}\n"
@@ -135,8 +148,8 @@ def months_text(months: pd.DataFrame) -> str:
             continue
         rows.append(
             f"  {name:5}{row['plane_wh_m2_day']:>10.0f}{row['harvest_wh_day']:>9.1f}{row['demand_wh_day']:>9.1f}"
-            f"{_number(row['harvest_over_demand'], '.2f'):>9}{row['lowest_soc']:>8.0%}"
-            f"{row['hours_out_per_year']:>8.1f}{_number(row['work_done'], '.0%'):>7}"
+            f"{_number(row['harvest_over_demand'], '.2f'):>9}{share_text(row['lowest_soc'], most=0):>8}"
+            f"{row['hours_out_per_year']:>8.1f}{share_text(row['work_done'], target=work_target, most=1):>7}"
         )
     dark = [name for name, harvest in zip(MONTH_NAMES, months["harvest_wh_day"], strict=True) if harvest == 0]
     deficit = [
@@ -186,8 +199,8 @@ def _outages(result: CheckResult) -> str:
     outages = result.outages
     if outages.first is None:
         return "Outages of essential loads: none."
-    ahead_h = standard_offset_h(result.weather.place.time_zone)
-    first = (outages.first + timedelta(hours=ahead_h)).strftime("%Y-%m-%d %H:%M")
+    began = outages.first + timedelta(hours=standard_offset_h(result.weather.place.time_zone))
+    first = f"{date_text(began.date(), result.weather)}, {began:%H:%M}"
     back = (
         "it does not always come back by itself"
         if result.visits_per_year > 0
@@ -197,7 +210,7 @@ def _outages(result: CheckResult) -> str:
         f"Outages of essential loads: {_times(outages.count_per_year)} and {_few(outages.hours_per_year)} h a year, "
         f"the longest {_hours(outages.longest_h)}\n"
         f"  the first begins about {first} standard time; {back}\n"
-        f"  {result.unserved_share:.2%} of the essential energy is not served"
+        f"  {share_text(result.unserved_share, places=2)} of the essential energy is not served"
     )
 
 
@@ -214,13 +227,14 @@ def _flows(result: CheckResult) -> str:
         wh = energy.out[key] * per_day
         if wh >= 0.005:
             share = energy.out[key] / energy.panel if energy.panel > 0 else math.nan
-            lines.append(f"  {wh:>8.2f} Wh  {_number(share, '.1%'):>6}  {name}")
+            lines.append(f"  {wh:>8.2f} Wh  {share_text(share, places=1, most=1):>6}  {name}")
     if abs(energy.stored * per_day) >= 0.005:
         whence = "more in the battery at the end" if energy.stored > 0 else "out of the battery's first charge"
         lines.append(f"  {energy.stored * per_day:>8.2f} Wh  {'':>6}  {whence}")
     served = energy.out["loads"] + energy.out["idle"] + energy.out["rails"] + energy.out["rail_wire"]
     if served > 0:
-        lines.append(f"  Of what the rails draw, {energy.out['idle'] / served:.0%} is idling.")
+        idling = share_text(energy.out["idle"] / served, most=1)
+        lines.append(f"  Of what the rails draw, {idling} is idling.")
     steps = ", ".join(f"{step.step} {-step.wh_per_year * per_day:+.1f}" for step in result.light_steps)
     before = f"Before the panel, in Wh a day against level ground in the open: {steps}"
     lines.append(fill(before, WIDTH, initial_indent="  ", subsequent_indent="    ", break_on_hyphens=False))

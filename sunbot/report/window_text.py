@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from ..light.window_light import COATED_FACTOR
 from .text import MONTH_NAMES
+from .words import lifetime, share_text
 
 if TYPE_CHECKING:
     from ..studies.behind_window import BehindWindow
@@ -34,13 +36,16 @@ def _distances(result: BehindWindow) -> str:
         "How far from the glass it can live (light and harvest in the worst month)",
         f"  {'distance m':>12}{'light Wh/m2/day':>17}{'harvest Wh/day':>16}{'alive':>8}",
     ]
+    target = result.robot.target.survival
     for distance_m, at in result.distances.iterrows():
         rows.append(
-            f"  {distance_m:>12.4g}{at['light_wh_m2_day']:>17.0f}{at['harvest_wh_day']:>16.2f}{at['survival']:>8.0%}"
+            f"  {distance_m:>12.4g}{at['light_wh_m2_day']:>17.0f}{at['harvest_wh_day']:>16.2f}"
+            f"{share_text(at['survival'], target=target, most=2):>8}"
             f"   {'meets the target' if at['target_met'] else 'misses it'}"
         )
     if result.survival_coated is not None:
         rows.append(
-            f"  If the coated glass passes that much less than it says: alive in {result.survival_coated:.0%} of years."
+            f"  Coated glass may pass {COATED_FACTOR:g} times less than it says; then it is alive in "
+            f"{share_text(result.survival_coated, target=target)} of {lifetime(result.robot)}s."
         )
     return "\n".join(rows)

@@ -55,6 +55,7 @@ class CheckResult:
 
     verdict : of the robot as filed (one design). survival_light_minus_10 : share alive with all light 10 % lower.
     survival_worst_parked : share alive if a robot that roams always parks the wrong way; None where it does not apply.
+    survival_coated : share alive if coated glass passes COATED_FACTOR times less light; None without such glass.
     ways_out : single changes that would meet the target, the smallest first; none where it is met.
     extra_load_w : largest constant load that can be added with the target still met [W]; None where it is missed.
     months : DataFrame by month, columns as in the JSON. trace : step by step, None unless asked for.
@@ -81,6 +82,7 @@ class CheckResult:
     ways_out: tuple[WayOut, ...] = ()
     extra_load_w: float | None = None
     survival_worst_parked: float | None = None
+    survival_coated: float | None = None
 
     @property
     def met(self) -> bool:
@@ -118,7 +120,8 @@ class CheckResult:
                     "work_target": target.work_done,
                     "visits_per_year": self.visits_per_year,
                 }
-                | ({} if worst is None else {"survival_worst_parked": worst}),
+                | ({} if worst is None else {"survival_worst_parked": worst})
+                | ({} if self.survival_coated is None else {"survival_coated": self.survival_coated}),
                 "months": self.months.reset_index().to_dict(orient="records"),
                 "autonomy_h": self.autonomy.to_dict(),
                 "outages": {
@@ -217,6 +220,7 @@ def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool =
         unserved_share=_unserved_share(balance),
         energy=energy,
         light_steps=light_to_panel(robot, chain.lights(robot), chain.harvest_yield(robot), panel_wh=energy.panel),
+        survival_coated=float(dimmed[2]) if dimmed.size > 2 else None,
         cautions=check_cautions(chain, robot, balance, verdict, survival_coarse=float(dimmed[1])),
         lanes=lanes,
         balance=balance,

@@ -12,7 +12,8 @@ from .chain import Chain
 from .deficit import deficit_to_cover_wh, largest_deficit_wh, yearly_wh
 from .designs import design_grid
 from .effort import Effort, balance_cost
-from .search import smallest
+from .pick_result import Shortfall
+from .search import DIGITS, smallest
 from .verdict import Verdict, verdict_on, years_needed
 
 RESOLUTION = 0.01
@@ -75,6 +76,30 @@ class Frontier:
             if again.any():
                 answer[cases[again]] = self._search(cases[again], below[again], above[again])
         return answer
+
+    def battery_range_ah(self, given: tuple[float, float] | None) -> tuple[float, float]:
+        """Capacities between which an answer is looked for [Ah], to the digits of what is tried."""
+        low, high = self._widest_range() if given is None else given
+        return float(f"{low:.{DIGITS}g}"), float(f"{high:.{DIGITS}g}")
+
+    def shortfalls(self, capacity_ah: FloatArray, *, most_ah: float) -> tuple[Shortfall, ...]:
+        """Why the wattages without a battery (NaN) have none: what they come to with the largest one tried."""
+        none = np.flatnonzero(np.isnan(capacity_ah))
+        if not none.size:
+            return ()
+        dark = self._hopeless()
+        tried = none[~dark[none]]
+        judged = dict(zip(tried, self.judge(tried, np.full(tried.size, most_ah)), strict=True))
+        found = []
+        for at in none:
+            watts = float(self.sizes[at])
+            if dark[at]:
+                found.append(Shortfall(watts))
+                continue
+            here = judged[at]
+            work = None if np.isnan(here.work_done) else here.work_done
+            found.append(Shortfall(watts, most_ah, here.survival, work))
+        return tuple(found)
 
     def _search(self, cases: IntArray, low: FloatArray, high: FloatArray) -> FloatArray:
         """The smallest capacity between two ends that meets the target, for some wattages."""

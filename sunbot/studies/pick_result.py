@@ -23,6 +23,7 @@ class Pair:
 
     survival : share of years alive. confirmed : the same in as many other years; None where there are none.
     work_done : in the worst month; None: none asked. mass_kg, price : of panel and battery; None: the file gives none.
+    confirmed_met : whether those other years meet the whole target, work included; None where there are none.
     """
 
     watts: float
@@ -32,6 +33,21 @@ class Pair:
     work_done: float | None = None
     mass_kg: float | None = None
     price: float | None = None
+    confirmed_met: bool | None = None
+
+
+@dataclass(frozen=True)
+class Shortfall:
+    """A panel wattage for which no battery in range meets the target: what it comes to with the largest one tried.
+
+    battery_ah, survival : None where none was tried: over all years the panel gives less than the target asks for.
+    work_done : in the worst month; None: none asked, or none tried.
+    """
+
+    watts: float
+    battery_ah: float | None = None
+    survival: float | None = None
+    work_done: float | None = None
 
 
 @dataclass(frozen=True)
@@ -82,7 +98,10 @@ class SurvivalMap:
 
 @dataclass(frozen=True, eq=False)
 class PickResult:
-    """The answer of `pick`; survival_map and controllers only where asked for."""
+    """The answer of `pick`; survival_map and controllers only where asked for.
+
+    battery_range_ah : capacities between which batteries were looked for. shortfalls : of the wattages without one.
+    """
 
     robot: Robot
     weather: Weather
@@ -92,6 +111,8 @@ class PickResult:
     neighbours: tuple[Neighbour, ...]
     by_autonomy: AutonomySizing
     cautions: tuple[Caution, ...]
+    battery_range_ah: tuple[float, float]
+    shortfalls: tuple[Shortfall, ...] = ()
     survival_map: SurvivalMap | None = None
     controllers: tuple[ControllerOption, ...] = ()
 
@@ -117,6 +138,8 @@ class PickResult:
                 "inputs": self.inputs.to_dict(),
                 "pairs": [asdict(pair) for pair in self.pairs],
                 "recommended": None if self.recommended is None else asdict(self.recommended),
+                "battery_range_ah": list(self.battery_range_ah),
+                "shortfalls": [asdict(shortfall) for shortfall in self.shortfalls],
                 "neighbours": [asdict(neighbour) for neighbour in self.neighbours],
                 "by_autonomy": self.by_autonomy.to_dict(),
             }

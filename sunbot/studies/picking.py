@@ -22,7 +22,7 @@ from .effort import Effort, Watcher, balance_cost, supply_cost
 from .frontier import WIDTH, Frontier, Judged
 from .inputs_used import inputs_used
 from .ladder import STEPS_UP, Ladder
-from .pick_result import ControllerOption, Neighbour, Pair, PickResult, Recommended, SurvivalMap
+from .pick_result import ControllerOption, Neighbour, Pair, PickResult, Recommended, Shortfall, SurvivalMap
 from .resizing import resized
 from .what_ifs import filed_and_dimmed
 
@@ -79,6 +79,8 @@ def pick(
         neighbours=found.neighbours,
         by_autonomy=size_by_autonomy(chain, robot, taken=found.recommended),
         cautions=_cautions(chain, robot, found.recommended),
+        battery_range_ah=found.battery_range_ah,
+        shortfalls=found.shortfalls,
         survival_map=_survival_map(found.frontier, found.pairs) if "map" in also else None,
     )
     return replace(result, controllers=_controllers(result, search)) if "controllers" in also else result
@@ -89,7 +91,9 @@ class _Found:
     """What one search comes to."""
 
     frontier: Frontier
+    battery_range_ah: tuple[float, float]
     pairs: tuple[Pair, ...]
+    shortfalls: tuple[Shortfall, ...]
     recommended: Recommended | None
     neighbours: tuple[Neighbour, ...]
 
@@ -112,10 +116,12 @@ class _Search:
         frontier = Frontier(self.chain, robot, self.sizes, effort=self.effort)
         self.effort.did(supply_cost(len(self.chain.weather.table), self.sizes.size))
         with Beside(partial(_other_years, self.chain, robot, self.sizes)) as others:
-            pairs = _sized(frontier, frontier.smallest_batteries(self.battery_ah))
+            smallest_ah = frontier.smallest_batteries(self.battery_ah)
+            within = frontier.battery_range_ah(self.battery_ah)
+            pairs, short = _sized(frontier, smallest_ah), frontier.shortfalls(smallest_ah, most_ah=within[1])
             chosen = _choose(pairs)
             if chosen is None:
-                return _Found(frontier, pairs, None, ())
+                return _Found(frontier, within, pairs, short, None, ())
             have = np.array([at for at, pair in enumerate(pairs) if pair.battery_ah is not None])
             sized_ah = np.array([pairs[at].battery_ah for at in have])
             ladder = Ladder(frontier, pairs.index(chosen[0]), float(chosen[0].battery_ah or 0.0))
@@ -125,9 +131,12 @@ class _Search:
         most_ah = np.inf if self.battery_ah is None else self.battery_ah[1]
         taken, step = ladder.taken(chosen[1], None if there is None else there[-STEPS_UP:], most_ah=most_ah)
         if there is not None:
-            confirmed = {int(at): pair.survival for at, pair in zip(have, there, strict=False)}
-            pairs = tuple(replace(pair, confirmed=confirmed.get(at)) for at, pair in enumerate(pairs))
-        return _Found(frontier, pairs, taken, ladder.neighbours(step))
+            seen = {int(at): here for at, here in zip(have, there, strict=False)}
+            pairs = tuple(
+                replace(pair, confirmed=seen[at].survival, confirmed_met=seen[at].met) if at in seen else pair
+                for at, pair in enumerate(pairs)
+            )
+        return _Found(frontier, within, pairs, short, taken, ladder.neighbours(step))
 
 
 def _other_years(chain: Chain, robot: Robot, sizes: FloatArray) -> Callable[[Asked], list[Judged] | None]:
@@ -198,12 +207,36 @@ def _choose(pairs: tuple[Pair, ...]) -> tuple[Pair, str] | None:
     for name, word in (("mass_kg", "lightest"), ("price", "cheapest")):
         if all(getattr(pair, name) is not None for pair in have):
             best = min(have, key=lambda pair: (getattr(pair, name), pair.watts))
-            return best, f"it is the {word} pair that meets the target ({getattr(best, name):.3g} {UNITS[name]})"
+            why = f"it is the {word} pair tried that meets the target ({getattr(best, name):.3g} {UNITS[name]})"
+            return best, why + _edge(pairs, best)
     best = min(have, key=lambda pair: (pair.watts * (pair.battery_ah or 0.0), pair.watts))
-    return best, (
-        "from here on a larger panel saves less battery, in per cent, than it adds panel, and a smaller one costs more "
-        "(the file gives neither mass nor price of both panel and battery to weigh them by)"
-    )
+    weighed = "(the file gives neither mass nor price of both panel and battery to weigh them by)"
+    return best, f"{_trade(pairs, best)} {weighed}{_edge(pairs, best)}"
+
+
+def _trade(pairs: tuple[Pair, ...], best: Pair) -> str:
+    """What was found on either side of the pair where panel and battery trade evenly."""
+    others = [pair for pair in pairs if pair.battery_ah is not None and pair is not best]
+    if not others:
+        return "it is the only panel tried that meets the target"
+    found = []
+    if any(pair.watts > best.watts for pair in others):
+        found.append("a larger panel saves less battery, in per cent, than it adds panel")
+    if any(pair.watts < best.watts for pair in others):
+        found.append("a smaller panel costs more battery, in per cent, than it saves panel")
+    elif pairs[0] is not best:
+        found.append("no battery in range does for the smaller ones tried")
+    return ", and ".join(found)
+
+
+def _edge(pairs: tuple[Pair, ...], best: Pair) -> str:
+    """That the pair stands at the end of the wattages tried, if it does."""
+    if len(pairs) == 1:
+        return "; no other panel was tried, --watts names more"
+    for end, extreme, beyond in ((0, "smallest", "smaller"), (-1, "largest", "larger")):
+        if best is pairs[end]:
+            return f"; it is the {extreme} panel tried: {beyond} ones were not tried, --watts names them"
+    return ""
 
 
 def _controllers(result: PickResult, search: _Search) -> tuple[ControllerOption, ...]:

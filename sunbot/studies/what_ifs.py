@@ -9,6 +9,7 @@ import numpy as np
 
 from ..harvest import Supply
 from ..inputs.robot import Robot
+from ..light.window_light import COATED_FACTOR
 from ..storage import Balance, as_filed
 from ..types import FloatArray
 from .chain import Chain
@@ -26,9 +27,11 @@ def filed_and_dimmed(
 ) -> tuple[Balance, FloatArray]:
     """The balance of the robot as filed, and the shares of years alive in light 10 and 15 % dimmer.
 
-    A run costs by its steps more than by its lanes: the three together take little longer than the first alone.
+    A third share, behind coated glass, is that in as much less light as such glass may pass.
+    A run costs by its steps more than by its lanes: all together take little longer than the first alone.
     """
-    light_x = np.array([1.0, DIM_LIGHT_X, COARSE_LIGHT_X])
+    coated = robot.window is not None and robot.window.clear_share < 1.0
+    light_x = np.array([1.0, DIM_LIGHT_X, COARSE_LIGHT_X, *([1.0 / COATED_FACTOR] if coated else [])])
     filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
     designs = replace(repeated(filed, light_x.size), light_x=light_x)
     balance = chain.run(robot, designs, keep=keep)

@@ -78,6 +78,36 @@ def test_the_sheet_says_the_verdict_and_draws_three_axes(lives, dies):
     assert "target not met" in check_figure(dies).get_suptitle()
 
 
+def test_no_legend_covers_what_is_drawn(lives, dies):
+    """Each legend of the sheet lies above its axes and below its title."""
+    for result in (lives, dies):
+        figure = check_figure(result)
+        figure.draw_without_rendering()
+        legends = [(ax, ax.get_legend()) for ax in figure.axes if ax.get_legend() is not None]
+        assert len(legends) == 2
+        for ax, legend in legends:
+            box = legend.get_window_extent()
+            assert box.y0 >= ax.get_window_extent().y1 - 0.5
+            assert box.y1 <= ax._left_title.get_window_extent().y0 + 0.5
+            assert box.x1 <= ax.get_window_extent().x1
+
+
+@pytest.mark.parametrize("name", ["Post $\\frac{$", "果園 \x1b[31m"])
+def test_a_sheet_is_drawn_whatever_the_name(lives, tmp_path, name):
+    """No formula is read into a name and no letter is asked of a font that lacks it; warnings are errors here."""
+    robot = lives.robot.model_copy(update={"name": name})
+    save_figure(check_figure(replace(lives, robot=robot)), tmp_path / "sheet.png")
+    assert (tmp_path / "sheet.png").stat().st_size > 10_000
+
+
+def test_deployments_are_drawn_as_such(lives, robots):
+    """Titles and lines speak of deployments."""
+    found = replace(lives, robot=robots.robot(deployment={"from": "10-20", "to": "11-30"}))
+    assert "alive in 3 of 3 deployments" in check_figure(found).get_suptitle()
+    labels = [line.get_label() for line in plot_charge(axes(), found).lines]
+    assert {"median deployment", "lowest of all deployments"} <= set(labels)
+
+
 def test_the_charge_needs_the_steps(dies):
     """Asked of an answer without them, it says what to ask for."""
     with pytest.raises(ValueError, match="trace=True"):

@@ -5,6 +5,7 @@ import signal
 import subprocess
 import sys
 import time
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -13,7 +14,7 @@ from matplotlib.figure import Figure
 
 from sunbot.cli import cli
 from sunbot.inputs import load_robot
-from sunbot.report.pick_plots import plot_frontier, plot_survival
+from sunbot.report.pick_plots import pick_figure, plot_frontier, plot_survival
 from sunbot.report.pick_text import pick_text
 from sunbot.report.progress import Progress, duration
 from sunbot.sky import weather_for
@@ -84,10 +85,54 @@ def test_the_text_leads_with_the_pair_and_lists_every_wattage(result):
     taken = result.recommended
     assert f"take {taken.watts:.4g} W of panel and {taken.battery_ah:.4g} Ah" in text
     assert text.index("why:") < text.index("One step beside it") < text.index("The smallest battery for each panel")
-    assert "none in range" in text
+    assert "none of any size: the panel gives less than the target asks for" in text
     assert "autonomy days" in text
     assert "mass kg" in text
     assert max(len(line) for line in text.splitlines()) < 110
+
+
+def test_a_panel_without_a_battery_says_what_was_tried_and_what_fails(robot_file):
+    """The largest battery of the range, and how many years it was alive with that."""
+    robot = load_robot(robot_file)
+    found = pick(robot, watts=(40.0,), battery_ah=(0.2, 0.5), weather=weather_for(robot.site, years=2, seed=1))
+    assert found.battery_range_ah == (0.2, 0.5)
+    (short,) = found.shortfalls
+    assert (short.watts, short.battery_ah) == (40.0, 0.5)
+    # A night of 8 h and more asks for 8 Wh from 0.5 Ah x 11 V: no year is survived.
+    assert short.survival == 0.0
+    text = pick_text(found)
+    assert "none up to 0.5 Ah: alive in 0% of years with that" in text
+    assert "NONE of the pairs in range meets the target: a panel of 40 W, batteries from 0.2 to 0.5 Ah." in text
+    assert found.to_dict()["shortfalls"] == [{"watts": 40.0, "battery_ah": 0.5, "survival": 0.0, "work_done": None}]
+
+
+def test_pairs_that_fail_in_other_years_are_marked(result):
+    """A star and what it means; no star, no legend."""
+    first, *rest = [pair for pair in result.pairs if pair.battery_ah is not None]
+    failing, passing = {"confirmed": 0.5, "confirmed_met": False}, {"confirmed": 1.0, "confirmed_met": True}
+    pairs = (replace(first, **failing), *(replace(pair, **passing) for pair in rest))
+    text = pick_text(replace(result, pairs=pairs))
+    assert text.count("50%*") == 1
+    assert "* misses the target in the other years" in text
+    passed = replace(result, pairs=tuple(replace(pair, **passing) for pair in pairs))
+    assert "*" not in pick_text(passed)
+
+
+def test_a_pair_whose_work_falls_short_in_other_years_is_marked_too(result):
+    """Alive in all of them, and yet no pair to take."""
+    pairs = tuple(
+        pair if pair.battery_ah is None else replace(pair, confirmed=1.0, confirmed_met=False) for pair in result.pairs
+    )
+    assert "100%*" in pick_text(replace(result, pairs=pairs))
+
+
+def test_shares_of_pairs_are_not_rounded_across_the_target(result):
+    """59.8 % of years is not 60."""
+    pairs = tuple(
+        pair if pair.battery_ah is None else replace(pair, confirmed=0.598, confirmed_met=False)
+        for pair in result.pairs
+    )
+    assert "59.8%*" in pick_text(replace(result, pairs=pairs))
 
 
 def test_the_plots_draw_the_pairs_with_units_on_the_axes(result):
@@ -103,6 +148,68 @@ def test_the_plots_draw_the_pairs_with_units_on_the_axes(result):
     assert lower.get_ylabel() == "battery when new [Ah]"
 
 
+def tick_labels(axis):
+    axis.get_figure().draw_without_rendering()
+    low, high = sorted(axis.get_view_interval())
+    return [tick.label1.get_text() for tick in axis.get_major_ticks() if low <= tick.get_loc() <= high]
+
+
+def test_a_single_wattage_is_a_column_of_the_map_not_a_blank(robot_file):
+    """The field reaches half a step to either side; the axis of batteries has plain numbers."""
+    robot = load_robot(robot_file)
+    found = pick(robot, watts=(60.0,), weather=weather_for(robot.site, years=2, seed=1), also=("map",))
+    ax = plot_survival(Figure().subplots(), found)
+    box = ax.collections[0].get_datalim(ax.transData)
+    assert (box.x0, box.x1) == (-0.5, 0.5)
+    over = found.survival_map.battery_ah
+    assert box.y0 < over[0] < over[-1] < box.y1
+    labels = tick_labels(ax.yaxis)
+    assert len(labels) >= 2
+    assert all(float(label) > 0 for label in labels)
+
+
+def test_the_map_says_what_its_colours_leave_out(result, robot_file):
+    """Where work is asked for, being alive is not meeting the target."""
+    assert "work" not in plot_survival(Figure().subplots(), result).get_title(loc="left")
+    load = result.robot.loads[0].model_copy(update={"skip_below_soc": 0.4, "name": "camera"})
+    working = replace(result, robot=result.robot.model_copy(update={"loads": (*result.robot.loads, load)}))
+    ax = plot_survival(Figure().subplots(), working)
+    assert "work may still fall short" in ax.get_title(loc="left")
+    assert "work included" in ax.get_legend().get_texts()[0].get_text()
+
+
+@pytest.mark.parametrize(
+    ("survival", "top"), [(0.945, ["90%", "94.5%", "100%"]), (1.0, ["80%", "90%", "100%"])], ids=["odd", "all"]
+)
+def test_the_target_is_told_exactly_beside_the_colours(result, survival, top):
+    """An edge of the colours at 94.5 % is labelled so, and all years are 100 % once."""
+    target = result.robot.target.model_copy(update={"survival": survival})
+    odd = replace(result, robot=result.robot.model_copy(update={"target": target}))
+    ax = plot_survival(Figure().subplots(), odd)
+    bar = next(other for other in ax.figure.axes if other is not ax)
+    assert [label.get_text() for label in bar.get_yticklabels()][-3:] == top
+
+
+def test_no_empty_frame_where_no_pair_meets_the_target(robot_file):
+    """One plot: the wattages that have no battery, and the range tried."""
+    robot = load_robot(robot_file)
+    weather = weather_for(robot.site, years=2, seed=1)
+    found = pick(robot, watts=(1.0, 2.0), battery_ah=(1.0, 2.0), weather=weather, also=("map",))
+    (ax,) = pick_figure(found).axes
+    (marks,) = [line for line in ax.lines if line.get_marker() == "x"]
+    assert list(marks.get_xdata()) == [1.0, 2.0]
+    assert "no battery from 1 to 2 Ah does" in marks.get_label()
+    assert not any("smallest" in text.get_text() for text in ax.get_legend().get_texts())
+
+
+def test_pairs_that_fail_in_other_years_are_hollow(result):
+    pairs = tuple(pair if pair.battery_ah is None else replace(pair, confirmed_met=False) for pair in result.pairs)
+    ax = plot_frontier(Figure().subplots(), replace(result, pairs=pairs))
+    (hollow,) = [line for line in ax.lines if "misses it in other years" in line.get_label()]
+    assert list(hollow.get_xdata()) == [pair.watts for pair in pairs if pair.battery_ah is not None]
+    assert hollow.get_markerfacecolor() == "white"
+
+
 def test_the_command_prints_one_document_and_writes_table_and_picture(robot_file, tmp_path):
     """JSON alone on stdout, cautions on stderr, a table of the pairs, a PNG; exit code 0."""
     csv, plot = tmp_path / "pairs.csv", tmp_path / "pairs.png"
@@ -111,7 +218,9 @@ def test_the_command_prints_one_document_and_writes_table_and_picture(robot_file
     document = json.loads(done.stdout)
     assert [pair["watts"] for pair in document["pairs"]] == [40.0, 80.0]
     assert document["inputs"]["years"] == 2
-    assert csv.read_text(encoding="utf-8").startswith("watts,battery_ah,survival,confirmed,work_done,mass_kg,price\n")
+    assert csv.read_text(encoding="utf-8").startswith(
+        "watts,battery_ah,survival,confirmed,work_done,mass_kg,price,confirmed_met\n"
+    )
     assert plot.read_bytes().startswith(b"\x89PNG")
 
 

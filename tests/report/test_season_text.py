@@ -1,6 +1,7 @@
 """The answer of season as text, table, document and pictures, and the command around it."""
 
 import json
+from dataclasses import replace
 
 import numpy as np
 import pandas as pd
@@ -87,7 +88,7 @@ def test_text_tells_every_part(found):
     for head in (
         "Invented post at Invented knoll",
         "Month by month",
-        "Lowest charge of the month, over the years",
+        "Lowest charge of the month, over the deployments",
         "The darkest days in a row",
         "The worst fortnight",
         "The work each month affords",
@@ -98,12 +99,13 @@ def test_text_tells_every_part(found):
         "Cautions",
     ):
         assert head in text
-    assert f"from {found.worst.year_start}" in text
+    assert f"the one from year {found.worst.year_start.year - 2000}, 20 October" in text
     november = next(entry for entry in found.calendar.entries if entry.month == 11)
     assert f"  Nov  {november.minutes_per_day:>16.0f}" in text
     assert f"tilt {found.best_mount.tilt_deg:.0f} deg" in text
     assert text.count(" h out a year") == len(found.levers) + 1
     assert "nan" not in text
+    assert not any(line != line.rstrip() for line in text.splitlines())
 
 
 def test_months_the_robot_is_not_out_are_left_out(found):
@@ -111,6 +113,37 @@ def test_months_the_robot_is_not_out_are_left_out(found):
     part = season_text(found).split("Harvest by the way the nose is held")[1].split("\n\n")[0]
     rows = [line.split()[0] for line in part.splitlines()[3:]]
     assert rows == ["Oct", "Nov"]
+
+
+def test_calendar_rows_say_where_the_robot_is_not_out(found):
+    """Ten months outside the deployment are told, not left out and not given work."""
+    part = season_text(found).split("The work each month affords")[1].split("\n\n")[0]
+    rows = {line.split()[0]: line for line in part.splitlines()[2:]}
+    assert [month for month, row in rows.items() if "not out" not in row] == ["Oct", "Nov"]
+    assert len(rows) == 12
+
+
+def test_mounts_and_headings_say_on_how_many_years_they_stand(found):
+    """All five here; the first five where more were generated."""
+    assert season_text(found).count("means of all 5 years") == 2
+    weather = found.check.weather
+    longer = replace(weather, table=pd.concat([weather.table] * 2), row=np.concatenate([weather.row] * 2))
+    text = season_text(replace(found, check=replace(found.check, weather=longer)))
+    assert text.count("means of the first 5 of 10 years") == 2
+
+
+def test_a_missed_target_names_both_remedies(found):
+    """Less essential load, or what pick finds."""
+    text = season_text(replace(found, calendar=replace(found.calendar, possible=False)))
+    assert "Shrink the essential loads, or see" in text
+    assert "sunbot pick for a larger panel or battery" in text
+
+
+def test_a_long_name_of_a_load_is_not_clipped(found):
+    """The column is as wide as its head."""
+    entries = tuple(replace(entry, load="sight and sound of all things") for entry in found.calendar.entries)
+    text = season_text(replace(found, calendar=replace(found.calendar, entries=entries)))
+    assert "sight and sound of all things" in text
 
 
 def test_csv_is_the_worst_fortnight_in_the_columns_of_check(found):
@@ -162,9 +195,49 @@ def test_spell_frequency_draws_the_yearly_lows(found):
 
 def test_calendar_bars_stand_where_the_months_are(found):
     ax = season_plots.plot_calendar(Figure().subplots(), found)
-    heights = {round(bar.get_x() + bar.get_width() / 2): bar.get_height() for bar in ax.patches}
+    heights = {round(bar.get_x() + bar.get_width() / 2): bar.get_height() for bar in ax.containers[0]}
     assert heights == {e.month - 1: pytest.approx(e.minutes_per_day) for e in found.calendar.entries}
     assert "minutes" in ax.get_ylabel()
+
+
+def test_months_not_out_are_marked_in_the_calendar(found):
+    """Ten months of grey with words, two without."""
+    ax = season_plots.plot_calendar(Figure().subplots(), found)
+    marked = {round(text.get_position()[0]) for text in ax.texts if text.get_text() == "not out"}
+    assert marked == set(range(12)) - {9, 10}
+
+
+def test_no_legend_of_the_sheet_lies_on_its_axes(found):
+    """Each stands above."""
+    figure = season_plots.season_figure(found)
+    figure.draw_without_rendering()
+    legends = [(ax, ax.get_legend()) for ax in figure.axes if ax.get_legend() is not None]
+    assert len(legends) == 7
+    for ax, legend in legends:
+        assert legend.get_window_extent().y0 >= ax.get_window_extent().y1 - 0.5
+
+
+def test_the_sheet_has_no_blank_row(found):
+    """What does not apply leaves no gap: behind a window there are three rows, an odd last plot has its row alone."""
+    figure = season_plots.season_figure(replace(found, sun=None, headings=()))
+    assert figure.axes[0].get_gridspec().nrows == 3
+    odd = season_plots.season_figure(replace(found, sun=None, headings=(), calendar=None))
+    assert odd.axes[0].get_gridspec().nrows == 3
+    last = odd.axes[-1].get_subplotspec()
+    assert (last.colspan.start, last.colspan.stop) == (0, 2)
+
+
+def test_a_load_can_have_any_name(found):
+    """Dollars in a legend are dollars."""
+    entries = tuple(replace(entry, load="$x^{$ arm") for entry in found.calendar.entries)
+    figure = Figure()
+    season_plots.plot_calendar(figure.subplots(), replace(found, calendar=replace(found.calendar, entries=entries)))
+    figure.draw_without_rendering()
+
+
+def test_plots_say_on_how_many_years_they_stand(found):
+    ax = season_plots.plot_headings(Figure().subplots(), found)
+    assert "means of all 5 years" in ax.get_title(loc="left")
 
 
 def test_levers_are_ranked_bars(found):

@@ -69,7 +69,10 @@ def test_coated_glass_is_told_with_its_doubt(tender, result):
     """With a coating the share alive at so much less light stands beside; clear glass has none."""
     robot, weather = tender
     assert 0.0 <= result.survival_coated <= result.distances.loc[0.3, "survival"]
+    answer = check(robot, weather=weather)
+    assert answer.survival_coated == answer.to_dict()["verdict"]["survival_coated"] == result.survival_coated
     clear = robot.model_copy(update={"window": robot.window.model_copy(update={"clear_share": 1.0})})
+    assert "survival_coated" not in check(clear, weather=weather).to_dict()["verdict"]
     assert behind_window(clear, weather=weather, years=2, distances_m=(0.2,)).survival_coated is None
 
 

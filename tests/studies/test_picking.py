@@ -11,6 +11,8 @@ from sunbot.studies.checking import check_on
 from sunbot.studies.deficit import deficit_to_cover_wh, largest_deficit_wh
 from sunbot.studies.effort import Effort
 from sunbot.studies.frontier import Frontier
+from sunbot.studies.pick_result import Pair
+from sunbot.studies.picking import _choose
 from sunbot.studies.resizing import resized
 
 YEARS = 5
@@ -75,7 +77,23 @@ def test_the_share_in_other_years_is_what_check_finds_there(robots):
     others = other_years(result.weather, filed.site, seed=1)
     assert not np.allclose(others.table["ghi"], result.weather.table["ghi"])
     sized = resized(filed, watts=40.0, battery_ah=pair.battery_ah)
-    assert check(sized, weather=others).verdict.survival[0] == pair.confirmed
+    there = check(sized, weather=others)
+    assert there.verdict.survival[0] == pair.confirmed
+    assert there.met == pair.confirmed_met
+
+
+def test_a_shortfall_is_what_check_finds_with_the_largest_battery(robots, place):
+    """Of a panel for which no battery in range does: the share alive with the largest one, below the target."""
+    filed = robots.robot()
+    result = pick(filed, watts=(1.0, 40.0), battery_ah=(0.5, 1.0), weather=place)
+    dark, short = result.shortfalls
+    assert (dark.watts, dark.battery_ah, dark.survival) == (1.0, None, None)
+    assert (short.watts, short.battery_ah) == (40.0, 1.0)
+    found = check(resized(filed, watts=40.0, battery_ah=1.0), weather=place)
+    assert short.survival == float(found.verdict.survival[0]) < filed.target.survival
+    # Of the panel no battery was tried for, even the largest that is looked for without a range does not do.
+    most_ah = pick(filed, watts=(40.0,), weather=place).battery_range_ah[1]
+    assert not check(resized(filed, watts=1.0, battery_ah=most_ah), weather=place).met
 
 
 def test_a_robot_is_held_to_the_target_in_other_years_too(robots):
@@ -130,7 +148,7 @@ def test_the_map_agrees_with_the_pairs(robots, place, picked):
 def test_the_words_of_the_document(picked):
     """JSON words as promised; a pair out of range has a battery of null."""
     document = picked.to_dict()
-    names = {"watts", "battery_ah", "survival", "confirmed", "work_done", "mass_kg", "price"}
+    names = {"watts", "battery_ah", "survival", "confirmed", "work_done", "mass_kg", "price", "confirmed_met"}
     assert set(document["pairs"][0]) == names
     assert set(document["recommended"]) >= {"watts", "battery_ah", "confirmed", "why"}
     assert set(document["by_autonomy"]) >= {"watts", "battery_ah"}
@@ -228,3 +246,32 @@ def test_the_running_deficit_is_that_of_a_lossless_store(robots, place):
                 worst = max(worst, deficit)
         assert found[year] == pytest.approx(worst, rel=1e-9)
     assert deficit_to_cover_wh(found[:, None], 4)[0] == np.sort(found)[3]
+
+
+def _pairs(*batteries_ah):
+    """Panels of 10, 20, 30 ... W with these batteries."""
+    return tuple(Pair(10.0 * (at + 1), battery_ah) for at, battery_ah in enumerate(batteries_ah))
+
+
+@pytest.mark.parametrize(
+    ("batteries_ah", "watts", "says", "says_not"),
+    [
+        ((20, 8, 7), 20, ("a larger panel saves less", "a smaller panel costs more"), ("not tried",)),
+        ((9, 8, 7), 10, ("a larger panel saves less", "smallest panel tried: smaller ones were not"), ("costs more",)),
+        ((50, 24, 7), 30, ("a smaller panel costs more", "largest panel tried: larger ones were not"), ("saves less",)),
+        ((None, 8, 7), 20, ("no battery in range does for the smaller ones tried",), ("costs more", "not tried")),
+        ((None, 8), 20, ("the only panel tried that meets the target", "larger ones were not tried"), ("costs more",)),
+        (
+            (8,),
+            10,
+            ("the only panel tried", "no other panel was tried, --watts names more"),
+            ("costs more", "saves less"),
+        ),
+    ],
+)
+def test_the_reason_speaks_only_of_panels_that_were_tried(batteries_ah, watts, says, says_not):
+    """At the end of the wattages tried nothing is known of what lies beyond, and the reason says so."""
+    best, why = _choose(_pairs(*batteries_ah))
+    assert best.watts == watts
+    assert all(words in why for words in says), why
+    assert not any(words in why for words in says_not), why
