@@ -12,7 +12,7 @@ import pytest
 import sunbot
 
 PACKAGE = Path(sunbot.__file__).parent
-GROUND = {"", "errors", "types", "calendar", "wires", "writing", "__version__"}
+GROUND = {"", "errors", "types", "calendar", "wires", "writing", "shares", "__version__"}
 MAY_IMPORT = {
     "inputs": set(),
     "sky": {"inputs"},

@@ -6,8 +6,9 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from ..shares import exact_share
 from .plots import ASKED, LIGHT, LOST, MUTED, SERVED, headed
-from .words import drawable, exact_share, lifetime
+from .words import drawable, lifetime
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes

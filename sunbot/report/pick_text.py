@@ -5,8 +5,9 @@ from __future__ import annotations
 from textwrap import fill
 from typing import TYPE_CHECKING
 
+from ..shares import EQUAL, exact_share, share_text
 from .text import WIDTH, cautions_text
-from .words import EQUAL, counted, exact_share, lifetime, printable, share_text
+from .words import counted, lifetime, printable
 
 if TYPE_CHECKING:
     from ..inputs.robot import Target

@@ -7,8 +7,9 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from ..shares import exact_share
 from .text import MONTH_NAMES, OUT_NAMES
-from .words import counted, drawable, exact_share, lifetime
+from .words import counted, drawable, lifetime
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes

@@ -6,10 +6,11 @@ import math
 from collections.abc import Callable, Mapping
 from typing import TYPE_CHECKING
 
+from ..shares import exact_share, share_text
 from .spells_text import spells_text
 from .text import MONTH_NAMES, cautions_text, check_head, months_text
 from .window_text import window_text
-from .words import date_text, exact_share, lifetime, printable, share_text
+from .words import date_text, lifetime, printable
 
 if TYPE_CHECKING:
     from ..inputs.robot import Target

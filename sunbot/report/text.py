@@ -9,14 +9,17 @@ from textwrap import fill
 from typing import TYPE_CHECKING
 
 from ..calendar import standard_offset_h
-from ..light.window_light import COATED_FACTOR
+from ..shares import exact_share, share_text
+from ..studies.outage_cause import COLD_NOTED
+from ..studies.what_ifs import COATED_FACTOR
 from ..types import Caution
-from .words import counted, date_text, exact_share, lifetime, printable, share_text
+from .words import counted, date_text, lifetime, printable
 
 if TYPE_CHECKING:
     import pandas as pd
 
     from ..studies.checking import CheckResult
+    from ..studies.outage_cause import OutageCause
 
 MONTH_NAMES = ("Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec")
 WIDTH = 96
@@ -57,7 +60,7 @@ def check_head(result: CheckResult) -> str:
     battery = robot.battery
     survived, years = int(verdict.years_survived[0]), verdict.years
     lines = [
-        f"{robot.name} at {robot.site.name}: {'target met' if result.met else 'TARGET NOT MET'}, judged with the worn "
+        f"{robot.name} at {robot.site.name}: {_headline(result)}, judged with the worn "
         f"battery ({battery.worn_capacity * battery.capacity_ah:.3g} of {battery.capacity_ah:.3g} Ah)",
         f"  panel {robot.watts:.4g} W, {robot.controller.kind}, battery {counted(battery.cells_in_series, 'cell')} "
         f"{battery.chemistry}",
@@ -84,6 +87,14 @@ def check_head(result: CheckResult) -> str:
     return "\n".join(lines)
 
 
+def _headline(result: CheckResult) -> str:
+    if result.met:
+        return "target met"
+    if result.verdict.target_met[0]:
+        return "NOT SHOWN to meet its target: a year without clouds proves nothing"
+    return "TARGET NOT MET"
+
+
 def _nearness(result: CheckResult) -> str:
     """How much more it would carry, or each single change that would do."""
     if result.extra_load_w is not None:
@@ -92,7 +103,7 @@ def _nearness(result: CheckResult) -> str:
         return (
             f"How close: {result.extra_load_w:.3g} W more, day and night at the battery, would still meet the target."
         )
-    if result.met:
+    if result.verdict.target_met[0]:
         return ""
     if not result.ways_out:
         return (
@@ -211,7 +222,26 @@ def _outages(result: CheckResult) -> str:
         f"the longest {_hours(outages.longest_h)}\n"
         f"  the first begins about {first} standard time; {back}\n"
         f"  {share_text(result.unserved_share, places=2)} of the essential energy is not served"
+        f"{_cold(outages.cause, cutoff_soc=result.robot.battery.cutoff_soc or 0.0)}"
     )
+
+
+def _cold(cause: OutageCause | None, *, cutoff_soc: float) -> str:
+    """What the cold had to do with outages, where that is worth a line."""
+    if cause is None:
+        return ""
+    lines = []
+    if cause.empty_at_soc - cutoff_soc >= COLD_NOTED:
+        lines.append(
+            f"  the box is at {cause.box_c:.0f} degC when they begin: so cold, a pack is cut off at "
+            f"{share_text(cause.empty_at_soc)} of its charge"
+        )
+    if cause.frost_share >= COLD_NOTED:
+        lines.append(
+            f"  {share_text(cause.frost_share)} of the harvest of the five days before came with the box too cold to "
+            "be charged"
+        )
+    return "".join(f"\n{line}" for line in lines)
 
 
 def _few(value: float) -> str:

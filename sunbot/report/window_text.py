@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from ..light.window_light import COATED_FACTOR
+from ..shares import share_text
+from ..studies.what_ifs import COATED_FACTOR
 from .text import MONTH_NAMES
-from .words import lifetime, share_text
+from .words import lifetime
 
 if TYPE_CHECKING:
     from ..studies.behind_window import BehindWindow

@@ -11,6 +11,7 @@ from ..harvest import supply_cautions
 from ..inputs.robot import Robot
 from ..inputs.site import Site
 from ..light import ground_cautions, window_cautions
+from ..shares import exact_share, share_text
 from ..sky import Weather
 from ..storage import Balance, Pack, resistance_ohm
 from ..types import Caution, FloatArray
@@ -84,7 +85,9 @@ def coarse_climate(site: Site, weather: Weather, *, survival: float | None = Non
     """That the light is read off the table of the world; ``survival`` : share alive with 0.15 less light."""
     if site.climate is None or not site.climate.coarse or weather.kind != "generated":
         return
-    with_less = "" if survival is None else f" With 15 % less light the robot is alive in {survival:.0%} of years."
+    with_less = (
+        "" if survival is None else f" With 15 % less light the robot is alive in {share_text(survival)} of years."
+    )
     yield Caution(
         "coarse-climate",
         "climate",
@@ -101,15 +104,14 @@ def few_years(survived: int, years: int, *, robot: Robot) -> Iterator[Caution]:
         return
     noun = "years" if robot.deployment is None else "deployments"
     one = "1 year leaves" if years == 1 else f"{years} {noun} leave"
-    enough = years_to_settle(target, survived / years)
-    if survived == years:
-        more = "" if enough is None else f"; {enough} without a failure would settle {target:.0%} (--years {enough})"
-    elif enough is None:
-        more = f"; at that share of failures no number of years settles {target:.0%}"
+    enough, aim = years_to_settle(target, survived / years), exact_share(target)
+    if enough is None:
+        more = f"; at that share of failures no number of years settles {aim}" if survived < years else ""
     else:
-        more = f"; if failures stay as rare, about {enough} would settle {target:.0%}"
+        more = "without a failure" if survived == years else "with failures as rare"
+        more = f"; {enough} {more} would settle {aim}"
         more += f" (--years {enough})" if enough <= MOST_YEARS else ", more than can be run"
-    yield Caution("few-years", "survival", f"{one} room for a true share of {low:.0%}{more}.")
+    yield Caution("few-years", "survival", f"{one} room for a true share of {share_text(low, target=target)}{more}.")
 
 
 def _outcome(robot: Robot, balance: Balance, verdict: Verdict) -> Iterator[Caution]:
@@ -188,7 +190,7 @@ def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
             yield Caution(
                 code,
                 "battery",
-                f"{share:.0%} of the year's harvest comes while the box is {word} {limit_c:g} degC, when these cells "
+                f"{share_text(share)} of the harvest comes while the box is {word} {limit_c:g} degC, when these cells "
                 "must not be charged; it can then only feed the loads. "
                 + ("Think of box_rise_c, heater_w or another chemistry." if code == "frost" else "Shade the box."),
             )

@@ -17,6 +17,10 @@ BEFORE_H = 120.0
 """How long before an outage its harvest is looked at; common practice."""
 
 
+COLD_NOTED = 0.1
+"""Share of harvest blocked by frost, or of charge locked by cold, from which on it is worth a word. Ours."""
+
+
 @dataclass(frozen=True)
 class OutageCause:
     """Means over the first outages of each month and year.

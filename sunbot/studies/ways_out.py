@@ -12,7 +12,7 @@ from ..storage import Designs, as_filed
 from ..types import BoolArray, FloatArray, IntArray
 from .chain import Chain
 from .designs import repeated
-from .outage_cause import OutageCause
+from .outage_cause import COLD_NOTED, OutageCause
 from .search import smallest
 from .tilts import few_years, tilted, worst_ratio
 from .verdict import verdict_on
@@ -35,8 +35,6 @@ TILTS_DEG = np.arange(0.0, 91.0, 15.0)
 TILT_YEARS = 3
 WARMER_K = (20.0, 10.0, 5.0)
 """Boxes tried where the cold is a cause: the warmest first, for if that is not enough, none is."""
-COLD_NOTED = 0.1
-"""Share of harvest blocked by frost, or of charge locked by cold, from which on a warmer box is tried."""
 
 
 def rounded_up(value: float, digits: int) -> float:

@@ -9,7 +9,7 @@ import numpy as np
 
 from ..harvest import Supply
 from ..inputs.robot import Robot
-from ..light.window_light import COATED_FACTOR
+from ..light.window_light import COATED_FACTOR as COATED_FACTOR
 from ..storage import Balance, as_filed
 from ..types import FloatArray
 from .chain import Chain

@@ -10,6 +10,7 @@ import pandas as pd
 import pytest
 
 from sunbot.report.text import MONTH_NAMES, OUT_NAMES, WIDTH, cautions_text, check_text, months_text
+from sunbot.studies.outage_cause import OutageCause
 from sunbot.types import Caution
 
 
@@ -182,3 +183,26 @@ def test_a_name_cannot_steer_the_terminal(lives):
     text = check_text(replace(lives, robot=lives.robot.model_copy(update={"name": "Red\x1b[31m"})))
     assert "\x1b" not in text
     assert text.startswith("Red\N{WHITE SQUARE}[31m at")
+
+
+def test_a_cloudless_year_never_meets_a_target(lives):
+    """A robot that lives under a clear sky all year is not shown to live; one that dies there dies."""
+    cloudless = replace(lives, weather=replace(lives.weather, kind="clear-sky"))
+    assert lives.met
+    assert not cloudless.met
+    first = check_text(cloudless).splitlines()[0]
+    assert "NOT SHOWN to meet its target" in first
+    assert "target met" not in first
+    assert not cloudless.to_dict()["verdict"]["target_met"]
+
+
+def test_what_the_cold_did_is_told_from_a_tenth_on(dies):
+    """The box, the charge a cold pack is cut at, and harvest lost to frost; not where the cold had no part."""
+    cold = replace(dies.outages, cause=OutageCause(box_c=-6.4, empty_at_soc=0.351, frost_share=0.912))
+    text = check_text(replace(dies, outages=cold))
+    assert "the box is at -6 degC when they begin: so cold, a pack is cut off at 35% of its charge" in text
+    assert "91% of the harvest of the five days before came with the box too cold" in text
+    mild = replace(dies.outages, cause=OutageCause(box_c=12.0, empty_at_soc=0.19, frost_share=0.05))
+    text = check_text(replace(dies, outages=mild))
+    assert "the box is at" not in text
+    assert "too cold to be charged" not in text

@@ -10,7 +10,8 @@ from types import SimpleNamespace
 import pytest
 from matplotlib.figure import Figure
 
-from sunbot.report.words import counted, date_text, drawable, exact_share, printable, share_text
+from sunbot.report.words import counted, date_text, drawable, printable
+from sunbot.shares import exact_share, share_text
 
 
 @pytest.mark.parametrize("years", [7, 50, 499, 500])

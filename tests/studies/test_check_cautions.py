@@ -8,7 +8,7 @@ from dataclasses import replace
 import pytest
 
 from sunbot.inputs.robot import Deployment
-from sunbot.studies.cautions import check_cautions, standing_cautions
+from sunbot.studies.cautions import check_cautions, few_years, standing_cautions
 from sunbot.studies.chain import Chain
 from sunbot.studies.verdict import verdict_on
 
@@ -36,6 +36,20 @@ def test_few_years_says_how_many_would_settle_it(chain, robots):
     """Three years without a failure leave the target of 0.95 open; 73 would settle it."""
     told = codes(chain, robots.robot(**GENEROUS, survival=0.95))
     assert "--years 73" in told["few-years"]
+
+
+def test_few_years_counts_the_failures_seen(robots):
+    """One in fifty: as many years as settle that share; at the target itself none do; more than 500 cannot be run."""
+    robot = robots.robot(survival=0.95)
+    (told,) = few_years(49, 50, robot=robot)
+    assert "203 with failures as rare would settle 95% (--years 203)" in told.text
+    (told,) = few_years(19, 20, robot=robot)
+    assert "no number of years settles 95%" in told.text
+    (told,) = few_years(48, 50, robot=robot)
+    assert "more than can be run" in told.text
+    (told,) = few_years(1, 1, robot=robot)
+    assert told.text.startswith("1 year leaves room")
+    assert not list(few_years(500, 500, robot=robot))
 
 
 def test_a_target_that_is_missed_needs_no_word_on_few_years(chain, robots):
