@@ -30,7 +30,7 @@ from .plain import plain_document
 from .statistics import wilson_interval
 from .verdict import Verdict, verdict_on
 from .ways_out import Nearness, WayOut, nearness, tilt_way_out, warm_way_out
-from .what_ifs import filed_and_dimmed, parked_wrong
+from .what_ifs import filed_and_dimmed
 
 
 @dataclass(frozen=True)
@@ -177,9 +177,10 @@ def check_with_nearness(chain: Chain, robot: Robot, *, years: int, seed: int, tr
         result = check_on(chain, robot, years=years, seed=seed, trace=trace)
         met = bool(result.verdict.target_met[0])
         others = () if met else (tilt_way_out(chain, robot), warm_way_out(chain, robot, result.outages.cause))
-        near, worst = helper.answer()
+        near: Nearness = helper.answer()
     ways = [*near.ways_out, *(way for way in others if way is not None)]
     ways.sort(key=lambda way: way.times)
+    worst = near.survival_worst_parked
     differs = worst is not None and worst != float(result.verdict.survival[0])
     return replace(
         result,
@@ -189,12 +190,8 @@ def check_with_nearness(chain: Chain, robot: Robot, *, years: int, seed: int, tr
     )
 
 
-def _aside(chain: Chain, robot: Robot) -> Callable[[None], tuple[Nearness, float | None]]:
-    def answer(_: None) -> tuple[Nearness, float | None]:
-        parked = parked_wrong(chain, robot)
-        return nearness(chain, robot, met=parked.met_as_filed), parked.survival_worst
-
-    return answer
+def _aside(chain: Chain, robot: Robot) -> Callable[[None], Nearness]:
+    return lambda _: nearness(chain, robot)
 
 
 def check_on(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:

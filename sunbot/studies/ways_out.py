@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from ..harvest import Supply
 from ..inputs.robot import Robot
 from ..storage import Designs, as_filed
 from ..types import BoolArray, FloatArray, IntArray
@@ -16,6 +17,7 @@ from .outage_cause import COLD_NOTED, OutageCause
 from .search import smallest
 from .tilts import few_years, tilted, worst_ratio
 from .verdict import verdict_on
+from .what_ifs import offers_by_parking
 
 PANEL, BATTERY, DRAW, WORK = "panel", "battery", "constant draw", "skippable work"
 MOST_X = {PANEL: 10.0, BATTERY: 20.0, DRAW: 20.0, WORK: 20.0}
@@ -31,6 +33,8 @@ LOADS_X = np.geomspace(1 / 30, 1.5, 48)
 """Extra loads tried, as multiples of the mean load asked: to 9 %."""
 LEAST_W, MOST_ROUNDS = 1e-3, 6
 """A robot that asks for next to nothing is tried from here on, each round 45 times as far as the one before."""
+FEW_YEARS, SCARCE = 5, 1.2
+"""Over more years, a robot whose worst month brings less than so many times what it asks is run by itself first."""
 TILTS_DEG = np.arange(0.0, 91.0, 15.0)
 TILT_YEARS = 3
 WARMER_K = (20.0, 10.0, 5.0)
@@ -129,34 +133,56 @@ class _Levers:
 
 @dataclass(frozen=True)
 class Nearness:
-    """What it would take (but for the tilt) where the target is missed; how much more it would carry where it is met.
+    """What it would take (but for tilt and box) where the target is missed; how much more it would carry where met.
 
     extra_load_w : largest constant load at the battery that can be added [W], to 9 % below, 0 where not even a
-    thirtieth of the mean load can; None where the target is missed.
+    thirtieth of the mean load can; None where the target is missed. survival_worst_parked : share of years alive if it
+    always parks the wrong way; None where no way is.
     """
 
     ways_out: tuple[WayOut, ...]
     extra_load_w: float | None
+    survival_worst_parked: float | None
 
 
-def nearness(chain: Chain, robot: Robot, *, met: bool) -> Nearness:
-    """How close the robot is to the other answer; ``met`` is its own."""
-    return Nearness((), _extra_load_w(chain, robot)) if met else Nearness(_ways_out(_Levers.of(chain, robot)), None)
+def nearness(chain: Chain, robot: Robot) -> Nearness:
+    """How close the robot is to the other answer, whichever its own is, and what parking the wrong way does to it."""
+    offers = offers_by_parking(chain, robot)
+    if chain.weather.n_years > FEW_YEARS and worst_ratio(chain, robot) < SCARCE:
+        # Told apart first: with more load a robot that fails would be cut often, which is slow.
+        met, worst = _loaded(chain, robot, np.zeros(1), offers)
+        extra_w = _extra_load_w(chain, robot, offers)[0] if met[0] else None
+    else:
+        extra_w, worst = _extra_load_w(chain, robot, offers)
+    return Nearness(() if extra_w is not None else _ways_out(_Levers.of(chain, robot)), extra_w, worst)
 
 
-def _extra_load_w(chain: Chain, robot: Robot) -> float:
-    """Largest extra load tried up to which every smaller one fits."""
+def _extra_load_w(chain: Chain, robot: Robot, offers: Supply) -> tuple[float | None, float | None]:
+    """Largest extra load tried up to which every smaller one fits, and the share of years alive parked the wrong way.
+
+    None for the load where not even the robot as filed meets its target.
+    """
     asked = chain.demand(robot)
     mean_w = float(asked.essential.total_w.mean() + asked.work.total_w.sum(axis=1).mean())
     extra_w = max(mean_w, LEAST_W) * np.concatenate(([0.0], LOADS_X))
-    many = repeated(as_filed(robot, n_levels=len(asked.level_loads)), extra_w.size)
+    met, worst = _loaded(chain, robot, extra_w, offers)
     for _ in range(MOST_ROUNDS):
-        balance = chain.run(robot, replace(many, extra_w=extra_w), keep="verdict")
-        fits = int(np.cumprod(verdict_on(balance, robot.target).target_met).sum())
+        fits = int(np.cumprod(met).sum())
         if fits < extra_w.size:
-            return rounded_down(float(extra_w[max(fits - 1, 0)]), 3)
+            return (rounded_down(float(extra_w[fits - 1]), 3) if fits else None), worst
         extra_w = extra_w[-1] * np.concatenate(([1.0], LOADS_X / LOADS_X[0]))
-    return rounded_down(float(extra_w[0]), 3)
+        met, _ = _loaded(chain, robot, extra_w, offers)
+    return rounded_down(float(extra_w[0]), 3), worst
+
+
+def _loaded(chain: Chain, robot: Robot, extra_w: FloatArray, offers: Supply) -> tuple[BoolArray, float | None]:
+    """Whether the target is met with so much more load, and the share of years alive parked the wrong way."""
+    filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
+    columns = np.concatenate((np.zeros(extra_w.size, dtype=np.int64), np.arange(1, offers.watts.size)))
+    more_w = np.concatenate((extra_w, np.zeros(offers.watts.size - 1)))
+    designs = replace(repeated(filed, columns.size), watts_at=columns, extra_w=more_w)
+    verdict = verdict_on(chain.run(robot, designs, supply=offers, keep="verdict"), robot.target)
+    return verdict.target_met[: extra_w.size], float(verdict.survival[-1]) if offers.watts.size > 1 else None
 
 
 def _ways_out(levers: _Levers) -> tuple[WayOut, ...]:

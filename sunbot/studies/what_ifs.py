@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Literal
 
 import numpy as np
 
 from ..harvest import Supply
 from ..inputs.robot import Robot
+from ..light import heading_matters
 from ..light.window_light import COATED_FACTOR as COATED_FACTOR
 from ..storage import Balance, as_filed
 from ..types import FloatArray
@@ -38,33 +39,18 @@ def filed_and_dimmed(
     return balance.of(0), verdict_on(balance, robot.target).survival[1:]
 
 
-@dataclass(frozen=True)
-class Parked:
-    """Whether the robot as filed meets its target, and the share of years alive if it always parks the wrong way:
-    None where it does not roam, or parks so anyway.
+def offers_by_parking(chain: Chain, robot: Robot) -> Supply:
+    """What its panels offer as filed and, in a second column, always parked the wrong way; without accounts.
+
+    One column where no way is wrong: it does not roam, parks so anyway, or heading does not matter to its panels.
     """
-
-    met_as_filed: bool
-    survival_worst: float | None
-
-
-def parked_wrong(chain: Chain, robot: Robot) -> Parked:
-    """What parking the wrong way costs, beside the robot as filed."""
     offers = [chain.supply(robot)]
-    if robot.roams and robot.parked != "worst":
+    if robot.roams and robot.parked != "worst" and any(heading_matters(panel) for panel in robot.panels):
         offers.append(chain.supply(robot.model_copy(update={"parked": "worst"}), accounts=False))
-    filed = as_filed(robot, n_levels=len(chain.demand(robot).level_loads))
-    designs = replace(repeated(filed, len(offers)), watts_at=np.arange(len(offers)))
-    verdict = verdict_on(chain.run(robot, designs, supply=_beside(offers), keep="verdict"), robot.target)
-    return Parked(bool(verdict.target_met[0]), float(verdict.survival[1]) if len(offers) > 1 else None)
-
-
-def _beside(offers: list[Supply]) -> Supply:
-    """Several supplies of the same robot as columns of one, without accounts."""
     return replace(
         offers[0],
         watts=np.concatenate([offer.watts for offer in offers]),
-        offer_w=np.concatenate([offer.offer_w for offer in offers], axis=1),
+        offer_w=np.concatenate([offer.offer_w for offer in offers], axis=1) if len(offers) > 1 else offers[0].offer_w,
         panel_w=None,
         wire_w=None,
     )
