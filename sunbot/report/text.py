@@ -244,6 +244,11 @@ def _cold(cause: OutageCause | None, *, cutoff_soc: float) -> str:
     return "".join(f"\n{line}" for line in lines)
 
 
+def _signed(value: float) -> str:
+    """With its sign, which a nought does not have."""
+    return f"{value:+.1f}" if abs(value) >= 0.05 else "0.0"
+
+
 def _few(value: float) -> str:
     """Three digits, and never a power of ten."""
     return f"{value:.3g}" if value < 1000 else f"{value:.0f}"
@@ -265,7 +270,7 @@ def _flows(result: CheckResult) -> str:
     if served > 0:
         idling = share_text(energy.out["idle"] / served, most=1)
         lines.append(f"  Of what the rails draw, {idling} is idling.")
-    steps = ", ".join(f"{step.step} {-step.wh_per_year * per_day:+.1f}" for step in result.light_steps)
+    steps = ", ".join(f"{step.step} {_signed(-step.wh_per_year * per_day)}" for step in result.light_steps)
     before = f"Before the panel, in Wh a day against level ground in the open: {steps}"
     lines.append(fill(before, WIDTH, initial_indent="  ", subsequent_indent="    ", break_on_hyphens=False))
     return "\n".join(lines)
