@@ -1,9 +1,12 @@
 """The smallest battery for every panel: held against check, the laws, and other years."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from sunbot.errors import InputError
+from sunbot.shares import share_text
 from sunbot.sky.other_years import other_years
 from sunbot.studies import pick
 from sunbot.studies.chain import Chain
@@ -15,6 +18,7 @@ from sunbot.studies.pick_result import Pair
 from sunbot.studies.picking import _choose
 from sunbot.studies.resizing import resized
 
+LIGHT = ("ghi", "dni", "dhi")
 YEARS = 5
 SIZES = (25.0, 40.0, 60.0, 90.0)
 
@@ -169,6 +173,21 @@ def test_a_panel_that_gives_less_than_is_asked_has_no_battery(robots, place):
     """Over all years too little: no battery makes up for it, and none is searched for."""
     result = pick(robots.robot(load_w=3.0), watts=(2.0, 3.0), weather=place)
     assert not result.met
+
+
+def test_how_sure_the_pair_is_goes_with_it(robots, place):
+    """Five years leave the share open; on a coarse climate the pair's share in 15 % dimmer light is told."""
+    robot = robots.robot(watts=40.0)
+    climate = robot.site.climate.model_copy(update={"coarse": True})
+    coarse = robot.model_copy(update={"site": robot.site.model_copy(update={"climate": climate})})
+    found = pick(coarse, watts=(40.0,), weather=place)
+    told = {caution.code: caution.text for caution in found.cautions}
+    assert "5 years leave room" in told["few-years"]
+    pair = resized(coarse, watts=found.recommended.watts, battery_ah=found.recommended.battery_ah)
+    dimmer = replace(place, table=place.table.assign(**{name: 0.85 * place.table[name] for name in LIGHT}))
+    share = check(pair, weather=dimmer).verdict.survival[0]
+    assert f"the robot is alive in {share_text(share)} of years" in told["coarse-climate"]
+    assert "coarse-climate" not in {caution.code for caution in pick(robot, watts=(40.0,), weather=place).cautions}
 
 
 def test_a_deployment_is_sized_on_its_own_days(robots, place):

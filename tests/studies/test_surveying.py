@@ -13,6 +13,7 @@ import pytest
 from sunbot.errors import InputError
 from sunbot.inputs.site import Climate, Site, WeatherSource
 from sunbot.sky import weather_for
+from sunbot.studies import check
 from sunbot.studies.surveying import survey
 
 # An invented climate at an invented place.
@@ -111,6 +112,24 @@ def test_a_wrong_clock_is_refused_and_shift_minutes_mends_it(tmp_path: Path):
     result = survey(mended)
     assert result.met
     assert result.months["ghi_wh_m2_day"].to_numpy() == pytest.approx(right.months["ghi_wh_m2_day"].to_numpy())
+
+
+def test_what_the_audit_found_goes_with_every_answer_on_the_record(tmp_path: Path, robots):
+    """Check tells a fault that is not fatal as a caution; the survey, which shows the audit, does not say it twice."""
+    site = coast_csv(tmp_path, holes=3)
+    failed = {check.code for check in survey(site).audit if not check.passed}
+    robot = robots.robot().model_copy(update={"site": site})
+    told = {caution.code for caution in check(robot).cautions}
+    assert failed
+    assert {f"audit-{code}" for code in failed} <= told
+    assert not any(caution.code.startswith("audit-") for caution in survey(site).cautions)
+
+
+def test_light_off_the_table_of_the_world_is_said():
+    """Also by the survey, which shows what a place offers; not where the climate is the user's own."""
+    coarse = MEADOW.model_copy(update={"climate": CLIMATE.model_copy(update={"coarse": True})})
+    assert "coarse-climate" in {caution.code for caution in survey(coarse, years=2).cautions}
+    assert "coarse-climate" not in {caution.code for caution in survey(MEADOW, years=2).cautions}
 
 
 def test_the_document_is_plain_json_and_repeats():
