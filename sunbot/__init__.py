@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from .errors import InputError
     from .inputs import Robot, Site, load_robot, load_site
     from .sky import Weather, weather_for
-    from .studies import CheckResult, PickResult, SeasonResult, check, pick, season
+    from .studies import CheckResult, PickResult, SeasonResult, SurveyResult, check, pick, season, survey
 
 _HOME = {
     "InputError": "errors",
@@ -29,6 +29,8 @@ _HOME = {
     "pick": "studies",
     "SeasonResult": "studies",
     "season": "studies",
+    "SurveyResult": "studies",
+    "survey": "studies",
 }
 
 __all__ = [
@@ -38,12 +40,14 @@ __all__ = [
     "Robot",
     "SeasonResult",
     "Site",
+    "SurveyResult",
     "Weather",
     "check",
     "load_robot",
     "load_site",
     "pick",
     "season",
+    "survey",
     "weather_for",
 ]
 

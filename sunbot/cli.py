@@ -188,7 +188,10 @@ def check(
     outputs = report.Outputs(as_json, csv, plot)
     filed = _robot(robot, site, weather)
     outputs.ready(files_behind(robot, site=site, weather=weather))
-    result = studies.check(filed, years=years, seed=seed, trace=csv is not None or plot is not None)
+    with report.Progress(sys.stderr) as progress:
+        result = studies.check(
+            filed, years=years, seed=seed, trace=csv is not None or plot is not None, watcher=progress
+        )
     click.echo(report.deliver_check(result, outputs, notes=_note), nl=False)
     ctx.exit(0 if result.met else TARGET_NOT_MET)
 

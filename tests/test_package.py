@@ -36,13 +36,14 @@ def test_help_loads_nothing_heavy():
         assert done.returncode == 0, done.stderr
 
 
-PROMISED = {"load_site", "load_robot", "weather_for", "check", "pick", "season"}
+PROMISED = {"load_site", "load_robot", "weather_for", "check", "pick", "season", "survey"}
 """The functions of which a notebook is made; what they take and give comes with them."""
 
 
 def test_every_public_name_is_there():
     """The promised functions, the models and results they take and give, and their error: all of it, and no more."""
-    taken_and_given = {"Site", "Robot", "Weather", "CheckResult", "PickResult", "SeasonResult", "InputError"}
+    taken_and_given = {"Site", "Robot", "Weather", "CheckResult", "PickResult", "SeasonResult"}
+    taken_and_given |= {"SurveyResult", "InputError"}
     assert set(sunbot.__all__) == PROMISED | taken_and_given
     for name in PROMISED:
         assert inspect.isfunction(getattr(sunbot, name)), name

@@ -22,6 +22,7 @@ from .autonomy import Autonomy, autonomy_of
 from .beside import Beside
 from .cautions import check_cautions
 from .chain import Chain
+from .effort import Watcher
 from .flows import EnergyYear, Step, energy_year, light_to_panel
 from .inputs_used import InputsUsed, inputs_used
 from .months import month_table
@@ -31,6 +32,9 @@ from .statistics import wilson_interval
 from .verdict import Verdict, verdict_on
 from .ways_out import Nearness, WayOut, nearness, tilt_way_out, warm_way_out
 from .what_ifs import filed_and_dimmed
+
+WITH_WEATHER, WITH_SUPPLY, WITH_VERDICT = 0.08, 0.4, 0.75
+"""Share of the work that is done when these are there; rough."""
 
 
 @dataclass(frozen=True)
@@ -147,7 +151,13 @@ class CheckResult:
 
 
 def check(
-    robot: Robot, *, weather: Weather | None = None, years: int = 50, seed: int = 1, trace: bool = False
+    robot: Robot,
+    *,
+    weather: Weather | None = None,
+    years: int = 50,
+    seed: int = 1,
+    trace: bool = False,
+    watcher: Watcher | None = None,
 ) -> CheckResult:
     """Does its panel keep ``robot`` alive at its site?
 
@@ -159,25 +169,36 @@ def check(
         Weather years to try, and the seed of everything drawn.
     trace : bool
         Keep the balance step by step (``result.trace``), for the CSV and the plots.
+    watcher : callable, optional
+        Is told the share of the work done, 0 to 1.
 
     Raises
     ------
     InputError
         The site's weather cannot be used, or no such robot can be built.
     """
+    watched = watcher or (lambda share: None)
     weather = weather_for(robot.site, years=years, seed=seed) if weather is None else weather
-    return check_with_nearness(Chain(weather, seed=seed), robot, years=years, seed=seed, trace=trace)
+    watched(WITH_WEATHER)
+    chain = Chain(weather, seed=seed)
+    return check_with_nearness(chain, robot, years=years, seed=seed, trace=trace, watcher=watched)
 
 
-def check_with_nearness(chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False) -> CheckResult:
+def check_with_nearness(
+    chain: Chain, robot: Robot, *, years: int, seed: int, trace: bool = False, watcher: Watcher | None = None
+) -> CheckResult:
     """`check` on a chain that may already hold the stages' results."""
+    watched = watcher or (lambda share: None)
     chain.lanes(robot)  # with all that both need, before they part
+    watched(WITH_SUPPLY)
     with Beside(partial(_aside, chain, robot)) as helper:
         helper.ask(None)
         result = check_on(chain, robot, years=years, seed=seed, trace=trace)
+        watched(WITH_VERDICT)
         met = bool(result.verdict.target_met[0])
         others = () if met else (tilt_way_out(chain, robot), warm_way_out(chain, robot, result.outages.cause))
         near: Nearness = helper.answer()
+    watched(1.0)
     ways = [*near.ways_out, *(way for way in others if way is not None)]
     ways.sort(key=lambda way: way.times)
     worst = near.survival_worst_parked

@@ -180,6 +180,15 @@ def test_less_light_never_helps_a_robot_without_skippable_work(robots, weather):
     assert answer.survival_light_minus_10 <= answer.verdict.survival[0]
 
 
+def test_the_watcher_hears_rising_shares_that_end_at_one(robots):
+    """What a progress line is drawn from."""
+    heard = []
+    check(robots.robot(), weather=robots.quick_weather(robots.hill(), years=1), watcher=heard.append)
+    assert heard == sorted(heard)
+    assert len(heard) >= 4
+    assert heard[-1] == 1.0
+
+
 def test_a_single_year_gives_no_interval(robots):
     """One year says alive or dead, not a share: low and high are null, and a caution says why."""
     from sunbot.inputs import site_with_weather
