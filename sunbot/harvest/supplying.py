@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field
 
@@ -172,27 +172,16 @@ class _Plant:
         mppt = self.controller.kind == "mppt"
         trackers = self._trackers(lit) if mppt else []
         for i, scale in enumerate(self.scales):
-            if mppt:
-                powers, follows = self._tracked(lit, trackers, scale=scale)
-            else:
-                powers, follows = (self._coupled(lit, scale=scale, volts=volts) for volts in self.volts), True
-            for j, (volts, parts) in enumerate(zip(self.volts, powers, strict=False)):
-                self._limit(*parts, volts=volts)
-                at = j if follows else slice(None)
-                for whole, part in zip(made, parts, strict=False):
-                    whole[:, i, at] = lit.mean(part) if follows else lit.mean(part)[:, None]
+            for j, volts in enumerate(self.volts):
+                if mppt:
+                    panel_w, wire_w = self._tracked(lit, trackers, scale=scale, volts=volts)
+                    offer_w = self._converted(panel_w - wire_w)
+                else:
+                    panel_w, wire_w, offer_w = self._coupled(lit, scale=scale, volts=volts)
+                self._limit(offer_w, panel_w, wire_w, volts=volts)
+                for whole, part in zip(made, (offer_w, panel_w, wire_w), strict=False):
+                    whole[:, i, j] = lit.mean(part)
         return made
-
-    def _tracked(
-        self, lit: Samples, trackers: list[tuple[FloatArray, dict[int, FloatArray]]], *, scale: float
-    ) -> tuple[Iterator[tuple[FloatArray, FloatArray, FloatArray]], bool]:
-        """Offered, panel and wire power behind trackers by battery voltage, and whether it makes a difference."""
-        highest, dragged = self._held(lit, trackers, scale=scale, volts=self.volts[-1])
-        limit_a = self.controller.max_charge_a
-        limited = limit_a is not None and bool((highest[0] > limit_a * self.volts[0]).any())
-        if not dragged and not limited:
-            return iter((highest,)), False
-        return (self._held(lit, trackers, scale=scale, volts=volts)[0] for volts in self.volts), True
 
     def _trackers(self, lit: Samples) -> list[tuple[FloatArray, dict[int, FloatArray]]]:
         """For each tracker the best voltage and, by number of the panel, the current there as filed."""
@@ -210,14 +199,11 @@ class _Plant:
         volts, amps = shared_peak(parameters, peak_a, peak_v)
         return [(volts, dict(enumerate(amps)))]
 
-    def _held(
+    def _tracked(
         self, lit: Samples, trackers: list[tuple[FloatArray, dict[int, FloatArray]]], *, scale: float, volts: float
-    ) -> tuple[tuple[FloatArray, FloatArray, FloatArray], bool]:
-        """Power offered, at the panels' terminals and lost in their wires, each tracker at its best or lowest voltage.
-
-        Also whether any panel is dragged below its best voltage.
-        """
-        panel_w, wire_w, dragged = np.zeros(len(lit.weight)), np.zeros(len(lit.weight)), False
+    ) -> tuple[FloatArray, FloatArray]:
+        """Power at the panels' terminals and lost in their wires, each tracker at its best or lowest voltage."""
+        panel_w, wire_w = np.zeros(len(lit.weight)), np.zeros(len(lit.weight))
         floor_v = float("-inf") if self.controller.step_up else volts + self.controller.headroom_v
         for best_v, filed_a in trackers:
             held = {
@@ -226,7 +212,6 @@ class _Plant:
             }
             reached_v = best_v - np.maximum.reduce([a * self.arrays[k].wire_ohm for k, a in held.items()])
             low = np.flatnonzero(reached_v < floor_v)
-            dragged |= bool(len(low))
             for k, amps in held.items():
                 ohm, panel_v = self.arrays[k].wire_ohm, best_v
                 if len(low):
@@ -236,10 +221,10 @@ class _Plant:
                     panel_v[low] = floor_v + amps[low] * ohm
                 panel_w += panel_v * amps
                 wire_w += amps**2 * ohm
-        return (self._converted(panel_w - wire_w), panel_w, wire_w), dragged
+        return panel_w, wire_w
 
     def _coupled(self, lit: Samples, *, scale: float, volts: float) -> tuple[FloatArray, FloatArray, FloatArray]:
-        """Power offered, at the panels' terminals and in their wires, all panels at the battery's voltage."""
+        """Power at the panels' terminals, in their wires and at the battery, all panels at the battery's voltage."""
         controller_v = volts + (self.controller.diode_drop_v if self.controller.kind == "direct" else 0.0)
         panel_w, wire_w, sum_a = (np.zeros(len(lit.weight)) for _ in range(3))
         for k, array in enumerate(self.arrays):
@@ -248,7 +233,7 @@ class _Plant:
             panel_w += controller_v * amps + lost_w
             wire_w += lost_w
             sum_a += amps
-        return volts * sum_a, panel_w, wire_w
+        return panel_w, wire_w, volts * sum_a
 
     def _current(self, k: int, at: Spots, *, scale: float, volts: float, only: IntArray | None = None) -> FloatArray:
         """Current of panel k held at a voltage behind its wire [A]; none flows back."""
