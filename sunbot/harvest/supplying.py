@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field
 
@@ -155,6 +155,21 @@ def _must_fit(lights: Sequence[Light], weather: Weather, arrays: Sequence[Array]
             raise ValueError("light on the cells is not finite throughout")
 
 
+Powers = tuple[FloatArray, FloatArray, FloatArray]
+"""Offered at the battery, at the panels' terminals, and lost in their wires; (n_samples,) each."""
+Tracker = tuple[FloatArray, dict[int, FloatArray]]
+"""Its best voltage, and by number of the panel the current there as filed."""
+
+
+@dataclass(frozen=True, eq=False)
+class _Held:
+    """A tracker at its best voltage: the current of each of its panels there, and the voltage behind the worst wire."""
+
+    best_v: FloatArray
+    amps: dict[int, FloatArray]
+    reached_v: FloatArray
+
+
 @dataclass(frozen=True, eq=False)
 class _Plant:
     """Panels and controller at some sizes (as multiples of the file) and battery voltages."""
@@ -172,18 +187,16 @@ class _Plant:
         mppt = self.controller.kind == "mppt"
         trackers = self._trackers(lit) if mppt else []
         for i, scale in enumerate(self.scales):
-            for j, volts in enumerate(self.volts):
-                if mppt:
-                    panel_w, wire_w = self._tracked(lit, trackers, scale=scale, volts=volts)
-                    offer_w = self._converted(panel_w - wire_w)
-                else:
-                    panel_w, wire_w, offer_w = self._coupled(lit, scale=scale, volts=volts)
-                self._limit(offer_w, panel_w, wire_w, volts=volts)
-                for whole, part in zip(made, (offer_w, panel_w, wire_w), strict=False):
-                    whole[:, i, j] = lit.mean(part)
+            before, means = None, []
+            for j, powers in enumerate(self._tracked(lit, trackers, scale) if mppt else self._coupled(lit, scale)):
+                limited = self._limited(powers, volts=self.volts[j])
+                if limited is not before:
+                    before, means = limited, [lit.mean(part) for part, _ in zip(limited, made, strict=False)]
+                for whole, mean in zip(made, means, strict=True):
+                    whole[:, i, j] = mean
         return made
 
-    def _trackers(self, lit: Samples) -> list[tuple[FloatArray, dict[int, FloatArray]]]:
+    def _trackers(self, lit: Samples) -> list[Tracker]:
         """For each tracker the best voltage and, by number of the panel, the current there as filed."""
         peak_v, peak_a = [], []
         for array, light, spot in zip(self.arrays, lit.cells_w_m2, lit.at, strict=True):
@@ -199,41 +212,58 @@ class _Plant:
         volts, amps = shared_peak(parameters, peak_a, peak_v)
         return [(volts, dict(enumerate(amps)))]
 
-    def _tracked(
-        self, lit: Samples, trackers: list[tuple[FloatArray, dict[int, FloatArray]]], *, scale: float, volts: float
-    ) -> tuple[FloatArray, FloatArray]:
-        """Power at the panels' terminals and lost in their wires, each tracker at its best or lowest voltage."""
+    def _tracked(self, lit: Samples, trackers: list[Tracker], scale: float) -> Iterator[Powers]:
+        """Behind trackers, by battery voltage; the same object again where the voltage makes no difference."""
+        held = [self._at_best(tracker, scale=scale) for tracker in trackers]
         panel_w, wire_w = np.zeros(len(lit.weight)), np.zeros(len(lit.weight))
-        floor_v = float("-inf") if self.controller.step_up else volts + self.controller.headroom_v
-        for best_v, filed_a in trackers:
-            held = {
-                k: tracked_current_a(amps * scale, best_v, wire_ohm=self.arrays[k].wire_ohm)
-                for k, amps in filed_a.items()
-            }
-            reached_v = best_v - np.maximum.reduce([a * self.arrays[k].wire_ohm for k, a in held.items()])
-            low = np.flatnonzero(reached_v < floor_v)
-            for k, amps in held.items():
-                ohm, panel_v = self.arrays[k].wire_ohm, best_v
-                if len(low):
-                    # A converter that only lowers is fully on here: the panel is dragged down to the battery.
-                    amps[low] = self._current(k, lit.at[k], scale=scale, volts=floor_v, only=low)
-                    panel_v = best_v.copy()
-                    panel_v[low] = floor_v + amps[low] * ohm
-                panel_w += panel_v * amps
-                wire_w += amps**2 * ohm
-        return panel_w, wire_w
+        for one in held:
+            for k, amps in one.amps.items():
+                panel_w += one.best_v * amps
+                wire_w += amps**2 * self.arrays[k].wire_ohm
+        at_best = (self._converted(panel_w - wire_w), panel_w, wire_w)
+        for volts in self.volts:
+            floor_v = float("-inf") if self.controller.step_up else volts + self.controller.headroom_v
+            low = [np.flatnonzero(one.reached_v < floor_v) for one in held]
+            yield (
+                self._dragged(lit, held, low, at_best, scale=scale, floor_v=floor_v) if any(map(len, low)) else at_best
+            )
 
-    def _coupled(self, lit: Samples, *, scale: float, volts: float) -> tuple[FloatArray, FloatArray, FloatArray]:
-        """Power at the panels' terminals, in their wires and at the battery, all panels at the battery's voltage."""
-        controller_v = volts + (self.controller.diode_drop_v if self.controller.kind == "direct" else 0.0)
-        panel_w, wire_w, sum_a = (np.zeros(len(lit.weight)) for _ in range(3))
-        for k, array in enumerate(self.arrays):
-            amps = self._current(k, lit.at[k], scale=scale, volts=controller_v)
-            lost_w = amps**2 * array.wire_ohm
-            panel_w += controller_v * amps + lost_w
-            wire_w += lost_w
-            sum_a += amps
-        return panel_w, wire_w, volts * sum_a
+    def _at_best(self, tracker: Tracker, *, scale: float) -> _Held:
+        best_v, filed_a = tracker
+        amps = {
+            k: tracked_current_a(filed * scale, best_v, wire_ohm=self.arrays[k].wire_ohm)
+            for k, filed in filed_a.items()
+        }
+        drop_v = np.maximum.reduce([a * self.arrays[k].wire_ohm for k, a in amps.items()])
+        return _Held(best_v, amps, best_v - drop_v)
+
+    def _dragged(
+        self, lit: Samples, held: list[_Held], low: list[IntArray], at_best: Powers, *, scale: float, floor_v: float
+    ) -> Powers:
+        """The powers with some samples of each tracker, ``low``, at ``floor_v`` behind their wires.
+
+        A converter that only lowers is fully on there: the panel is dragged down to the battery.
+        """
+        panel_w, wire_w = at_best[1].copy(), at_best[2].copy()
+        for one, at in zip(held, low, strict=True):
+            for k, best_a in one.amps.items():
+                ohm, amps = self.arrays[k].wire_ohm, self._current(k, lit.at[k], scale=scale, volts=floor_v, only=at)
+                panel_w[at] += (floor_v + amps * ohm) * amps - one.best_v[at] * best_a[at]
+                wire_w[at] += (amps**2 - best_a[at] ** 2) * ohm
+        return self._converted(panel_w - wire_w), panel_w, wire_w
+
+    def _coupled(self, lit: Samples, scale: float) -> Iterator[Powers]:
+        """All panels at the battery's voltage, by battery voltage."""
+        for volts in self.volts:
+            controller_v = volts + (self.controller.diode_drop_v if self.controller.kind == "direct" else 0.0)
+            panel_w, wire_w, sum_a = (np.zeros(len(lit.weight)) for _ in range(3))
+            for k, array in enumerate(self.arrays):
+                amps = self._current(k, lit.at[k], scale=scale, volts=controller_v)
+                lost_w = amps**2 * array.wire_ohm
+                panel_w += controller_v * amps + lost_w
+                wire_w += lost_w
+                sum_a += amps
+            yield volts * sum_a, panel_w, wire_w
 
     def _current(self, k: int, at: Spots, *, scale: float, volts: float, only: IntArray | None = None) -> FloatArray:
         """Current of panel k held at a voltage behind its wire [A]; none flows back."""
@@ -251,15 +281,20 @@ class _Plant:
         own = self.controller
         return converted_w(feed_w, efficiency=own.efficiency, curve=own.efficiency_curve, rated_w=own.rated_w)
 
-    def _limit(self, offer_w: FloatArray, panel_w: FloatArray, wire_w: FloatArray, *, volts: float) -> None:
-        """Start-up and current limit, in place: below the one nothing flows, above the other panels are throttled."""
-        own = self.controller
+    def _limited(self, powers: Powers, *, volts: float) -> Powers:
+        """With start-up and current limit: below the one nothing flows, above the other panels are throttled.
+
+        The same object where neither makes a difference.
+        """
+        own, (offer_w, panel_w, wire_w) = self.controller, powers
         if own.start_up_w > 0.0:
-            asleep = panel_w < own.start_up_w
-            offer_w[asleep] = 0.0
-            wire_w[asleep] = 0.0
-        if own.max_charge_a is not None:
-            over = np.flatnonzero(offer_w > own.max_charge_a * volts)
-            part = own.max_charge_a * volts / offer_w[over]
-            for power in (offer_w, panel_w, wire_w):
-                power[over] *= part
+            awake = panel_w >= own.start_up_w
+            offer_w, wire_w = offer_w * awake, wire_w * awake
+            powers = (offer_w, panel_w, wire_w)
+        if own.max_charge_a is None or not len(over := np.flatnonzero(offer_w > own.max_charge_a * volts)):
+            return powers
+        part = own.max_charge_a * volts / offer_w[over]
+        offer_w, panel_w, wire_w = (power.copy() for power in powers)
+        for power in (offer_w, panel_w, wire_w):
+            power[over] *= part
+        return offer_w, panel_w, wire_w
