@@ -9,11 +9,13 @@ import numpy as np
 
 from ..harvest import Supply
 from ..inputs.robot import Robot
-from ..storage import Designs, as_filed
+from ..storage import Designs, as_filed, usable_share
 from ..types import BoolArray, FloatArray, IntArray
 from .chain import Chain
 from .designs import repeated
-from .outage_cause import COLD_NOTED, OutageCause
+from .heating import box_of
+from .months import month_sums
+from .outage_cause import COLD_NOTED
 from .search import smallest
 from .tilts import few_years, tilted, worst_ratio
 from .verdict import verdict_on
@@ -35,6 +37,8 @@ LEAST_W, MOST_ROUNDS = 1e-3, 6
 """A robot that asks for next to nothing is tried from here on, each round 45 times as far as the one before."""
 FEW_YEARS, SCARCE = 5, 1.2
 """Over more years, a robot whose worst month brings less than so many times what it asks is run by itself first."""
+RARE = 0.02
+"""Share of the steps, or of the harvest, from which on the cold is looked into."""
 TILTS_DEG = np.arange(0.0, 91.0, 15.0)
 TILT_YEARS = 3
 WARMER_K = (20.0, 10.0, 5.0)
@@ -133,7 +137,7 @@ class _Levers:
 
 @dataclass(frozen=True)
 class Nearness:
-    """What it would take (but for tilt and box) where the target is missed; how much more it would carry where met.
+    """What it would take (but for the tilt) where the target is missed; how much more it would carry where met.
 
     extra_load_w : largest constant load at the battery that can be added [W], to 9 % below, 0 where not even a
     thirtieth of the mean load can; None where the target is missed. survival_worst_parked : share of years alive if it
@@ -148,13 +152,24 @@ class Nearness:
 def nearness(chain: Chain, robot: Robot) -> Nearness:
     """How close the robot is to the other answer, whichever its own is, and what parking the wrong way does to it."""
     offers = offers_by_parking(chain, robot)
-    if chain.weather.n_years > FEW_YEARS and worst_ratio(chain, robot) < SCARCE:
+    if chain.weather.n_years > FEW_YEARS and _scarce(chain, robot):
         # Told apart first: with more load a robot that fails would be cut often, which is slow.
         met, worst = _loaded(chain, robot, np.zeros(1), offers)
         extra_w = _extra_load_w(chain, robot, offers)[0] if met[0] else None
     else:
         extra_w, worst = _extra_load_w(chain, robot, offers)
-    return Nearness(() if extra_w is not None else _ways_out(_Levers.of(chain, robot)), extra_w, worst)
+    if extra_w is not None:
+        return Nearness((), extra_w, worst)
+    warm = warm_way_out(chain, robot)
+    return Nearness((*_ways_out(_Levers.of(chain, robot)), *([] if warm is None else [warm])), None, worst)
+
+
+def _scarce(chain: Chain, robot: Robot) -> bool:
+    """Whether some month brings little more than is asked, harvest that frost keeps out of the pack left out."""
+    lanes, offer_w, asked_w = chain.lanes(robot), chain.offer_w(robot), chain.asked_w(robot)
+    frozen = box_of(chain, robot).warm_c < chain.pack(robot).charge_min_c
+    usable_wh = month_sums(np.where(frozen, np.minimum(offer_w, asked_w), offer_w), lanes)
+    return bool((usable_wh < SCARCE * month_sums(asked_w, lanes)).any())
 
 
 def _extra_load_w(chain: Chain, robot: Robot, offers: Supply) -> tuple[float | None, float | None]:
@@ -217,10 +232,9 @@ def tilt_way_out(chain: Chain, robot: Robot) -> WayOut | None:
     return WayOut("tilt", f"tilt {filed:.3g} deg -> {least:.3g} deg", least, 1.0 + abs(least - filed) / 90.0)
 
 
-def warm_way_out(chain: Chain, robot: Robot, cause: OutageCause | None) -> WayOut | None:
-    """The least of a few warmer boxes that meets the target; None where none does, or the cold is not the cause."""
-    cutoff_soc = chain.pack(robot).cutoff_soc
-    if cause is None or (cause.frost_share < COLD_NOTED and cause.empty_at_soc - cutoff_soc < COLD_NOTED):
+def warm_way_out(chain: Chain, robot: Robot) -> WayOut | None:
+    """The least of a few warmer boxes that meets the target; None where none does, or the box is never cold."""
+    if not _in_the_cold(chain, robot):
         return None
     battery, enough = robot.battery, None
     for more_k in WARMER_K:
@@ -232,6 +246,16 @@ def warm_way_out(chain: Chain, robot: Robot, cause: OutageCause | None) -> WayOu
         change = f"box {more_k:g} K warmer (box_rise_c = {rise_c:g}: insulation, or the waste heat of the electronics)"
         enough = WayOut("box", change, rise_c, 1.0 + more_k / WARMER_K[0])
     return enough
+
+
+def _in_the_cold(chain: Chain, robot: Robot) -> bool:
+    """Whether the box is at times so cold that much charge is locked, or that harvest is kept out of the pack."""
+    pack, out = chain.pack(robot), chain.out(robot)
+    box_c, offer_w = box_of(chain, robot).warm_c, chain.offer_w(robot)
+    if out is not None:
+        box_c, offer_w = box_c[out], offer_w[out]
+    locked = 1.0 - float(usable_share(pack, np.quantile(box_c, RARE)))
+    return locked >= COLD_NOTED or float(offer_w[box_c < pack.charge_min_c].sum()) >= RARE * float(offer_w.sum()) > 0
 
 
 def _meets_at(chain: Chain, robot: Robot, tilt_deg: float) -> bool:
