@@ -30,7 +30,7 @@ from .outage_cause import OutageCause, outage_cause
 from .plain import plain_document
 from .statistics import wilson_interval
 from .verdict import Verdict, verdict_on
-from .ways_out import Nearness, WayOut, nearness, tilt_way_out
+from .ways_out import Nearness, WayOut, nearness, tilt_way_out, warm_way_out
 from .what_ifs import filed_and_dimmed
 
 WITH_WEATHER, WITH_SUPPLY, WITH_VERDICT = 0.08, 0.4, 0.75
@@ -196,10 +196,10 @@ def check_with_nearness(
         result = check_on(chain, robot, years=years, seed=seed, trace=trace)
         watched(WITH_VERDICT)
         met = bool(result.verdict.target_met[0])
-        tilt = None if met else tilt_way_out(chain, robot)
+        others = () if met else (tilt_way_out(chain, robot), warm_way_out(chain, robot))
         near: Nearness = helper.answer()
     watched(1.0)
-    ways = [*near.ways_out, *([] if tilt is None else [tilt])]
+    ways = [*near.ways_out, *(way for way in others if way is not None)]
     ways.sort(key=lambda way: way.times)
     worst = near.survival_worst_parked
     differs = worst is not None and worst != float(result.verdict.survival[0])

@@ -18,7 +18,7 @@ from .months import month_sums
 from .outage_cause import COLD_NOTED
 from .search import smallest
 from .tilts import few_years, tilted, worst_ratio
-from .verdict import verdict_on
+from .verdict import Verdict, verdict_on, years_needed
 from .what_ifs import offers_by_parking
 
 PANEL, BATTERY, DRAW, WORK = "panel", "battery", "constant draw", "skippable work"
@@ -110,8 +110,8 @@ class _Levers:
 
     def panel_x(self, light_x: float) -> float:
         """The panel that does what so much more light does, its own wires and limits counted; NaN: none near."""
-        watts = np.concatenate(([1.0], light_x * PANEL_STEPS)) * self.robot.watts
-        many = replace(repeated(self.filed, PANEL_STEPS.size), watts_at=np.arange(1, watts.size))
+        watts = light_x * PANEL_STEPS * self.robot.watts
+        many = replace(repeated(self.filed, watts.size), watts_at=np.arange(watts.size))
         lanes = self.chain.lanes(self.robot)
         balance = self.chain.run(self.robot, many, watts=watts, lanes=lanes, keep="verdict")
         met = verdict_on(balance, self.robot.target).target_met
@@ -137,7 +137,7 @@ class _Levers:
 
 @dataclass(frozen=True)
 class Nearness:
-    """What it would take (but for the tilt) where the target is missed; how much more it would carry where met.
+    """What it would take (but for tilt and box) where the target is missed; how much more it would carry where met.
 
     extra_load_w : largest constant load at the battery that can be added [W], to 9 % below, 0 where not even a
     thirtieth of the mean load can; None where the target is missed. survival_worst_parked : share of years alive if it
@@ -152,7 +152,7 @@ class Nearness:
 def nearness(chain: Chain, robot: Robot) -> Nearness:
     """How close the robot is to the other answer, whichever its own is, and what parking the wrong way does to it."""
     offers = offers_by_parking(chain, robot)
-    if chain.weather.n_years > FEW_YEARS and _scarce(chain, robot):
+    if chain.weather.n_years > FEW_YEARS and (offers.watts.size > 1 or _scarce(chain, robot)):
         # Told apart first: with more load a robot that fails would be cut often, which is slow.
         met, worst = _loaded(chain, robot, np.zeros(1), offers)
         extra_w = _extra_load_w(chain, robot, offers)[0] if met[0] else None
@@ -160,8 +160,7 @@ def nearness(chain: Chain, robot: Robot) -> Nearness:
         extra_w, worst = _extra_load_w(chain, robot, offers)
     if extra_w is not None:
         return Nearness((), extra_w, worst)
-    warm = warm_way_out(chain, robot)
-    return Nearness((*_ways_out(_Levers.of(chain, robot)), *([] if warm is None else [warm])), None, worst)
+    return Nearness(_ways_out(_Levers.of(chain, robot)), None, worst)
 
 
 def _scarce(chain: Chain, robot: Robot) -> bool:
@@ -225,7 +224,10 @@ def tilt_way_out(chain: Chain, robot: Robot) -> WayOut | None:
     if max(ratios) < LEAST_X * worst_ratio(few, robot):
         return None
     best = float(TILTS_DEG[int(np.argmax(ratios))])
-    if not _meets_at(chain, robot, best):
+    month, years = chain.first_month(robot), chain.weather.n_years
+    # A robot that loses more of the few years than it may of all is not tried on all.
+    lost = int(_at_tilt(few, robot, best, first_month=month).lost.sum()) if few is not chain else 0
+    if lost > years - years_needed(robot.target, years) or not _meets_at(chain, robot, best):
         return None
     half_way = (best + filed) / 2
     least = half_way if _meets_at(chain, robot, half_way) else best
@@ -259,8 +261,12 @@ def _in_the_cold(chain: Chain, robot: Robot) -> bool:
 
 
 def _meets_at(chain: Chain, robot: Robot, tilt_deg: float) -> bool:
-    """Whether the target is met with the first panel at another tilt, in the energy years of the robot as filed."""
+    return bool(_at_tilt(chain, robot, tilt_deg, first_month=chain.first_month(robot)).target_met[0])
+
+
+def _at_tilt(chain: Chain, robot: Robot, tilt_deg: float, *, first_month: int) -> Verdict:
+    """The verdict on the robot with its first panel at another tilt, in energy years that start with a given month."""
     other = tilted(robot, tilt_deg)
-    offer = chain.supply(other, accounts=False)
-    balance = chain.run(other, supply=offer, lanes=chain.lanes(robot), keep="verdict")
-    return bool(verdict_on(balance, robot.target).target_met[0])
+    lanes = chain.lanes(robot, first_month=first_month)
+    balance = chain.run(other, supply=chain.supply(other, accounts=False), lanes=lanes, keep="verdict")
+    return verdict_on(balance, robot.target)
