@@ -13,6 +13,21 @@ IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 AnyArray = NDArray[Any]
 
+MONTHS = (
+    "January",
+    "February",
+    "March",
+    "April",
+    "May",
+    "June",
+    "July",
+    "August",
+    "September",
+    "October",
+    "November",
+    "December",
+)
+
 
 @dataclass(frozen=True)
 class Place:

@@ -18,8 +18,6 @@ if TYPE_CHECKING:
 Row = tuple[Any, ...]
 """From, to, and what holds in these hours."""
 
-MONTHS = ["January", "February", "March", "April", "May", "June"]
-MONTHS += ["July", "August", "September", "October", "November", "December"]
 DAYS_IN_MONTH = (31, 29, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31)
 SHEET_MISMATCH = 0.05
 """How far watts may differ from vmp_v x imp_a; common practice: data sheets round."""

@@ -10,8 +10,8 @@ from pydantic.fields import FieldInfo
 from pydantic_core import ErrorDetails
 
 from ..errors import Fault
+from ..types import MONTHS
 from . import keys
-from .checks import MONTHS
 from .chemistries import REST_VOLTAGES, chemistries_in_words, chemistry_meant
 from .fields import Part, Path
 from .monthly import of_twelve

@@ -7,7 +7,7 @@ from typing import Any
 
 from pydantic_core import ErrorDetails
 
-from .checks import MONTHS
+from ..types import MONTHS
 
 # By key: up to this value, these may be in another unit, and what makes them right. Common practice: the brightest
 # months bring 8 to 9 kWh/m2 a day or 30 MJ/m2, their sums 250 kWh/m2 or 900 MJ/m2; no air passes 60 degC.

@@ -10,7 +10,8 @@ from itertools import pairwise
 from typing import TYPE_CHECKING
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError, available_timezones
 
-from .checks import MONTHS, day_of_year, in_words
+from ..types import MONTHS
+from .checks import day_of_year, in_words
 from .fields import Problem
 
 if TYPE_CHECKING:

@@ -7,25 +7,12 @@ import unicodedata
 from typing import TYPE_CHECKING
 
 from ..calendar import REFERENCE_YEAR
+from ..types import MONTHS
 
 if TYPE_CHECKING:
     from ..inputs.robot import Robot
     from ..sky import Weather
 
-LONG_MONTHS = (
-    "January",
-    "February",
-    "March",
-    "April",
-    "May",
-    "June",
-    "July",
-    "August",
-    "September",
-    "October",
-    "November",
-    "December",
-)
 MISSING = "\N{WHITE SQUARE}"
 
 
@@ -43,7 +30,7 @@ def date_text(day: dt.date, weather: Weather) -> str:
     """A date; generated years have a number, since they are nobody's calendar."""
     if weather.kind != "generated":
         return f"{day:%Y-%m-%d}"
-    return f"year {day.year - REFERENCE_YEAR + 1}, {day.day} {LONG_MONTHS[day.month - 1]}"
+    return f"year {day.year - REFERENCE_YEAR + 1}, {day.day} {MONTHS[day.month - 1]}"
 
 
 def printable(text: str) -> str:

@@ -8,7 +8,7 @@ import pandas as pd
 from ..calendar import standard_offset_h
 from ..errors import Fault, InputError
 from ..inputs.site import Climate, Site
-from ..types import BoolArray, Caution, FloatArray, Place
+from ..types import MONTHS, BoolArray, Caution, FloatArray, Place
 from .air import daily_extremes_c, hourly_temperature_c, snow_days, warmth_scores
 from .daily_light import MonthLight, daily_scores, month_light, shares_of_clear
 from .digest import table_digest
@@ -34,20 +34,6 @@ DARKEST_MONTH = 0.05
 
 DARK_KWH, TWILIGHT_KWH = 0.02, 0.05
 """A month whose clear days bring less is polar night: up to 0.05 in its climate is twilight, which no panel can use."""
-MONTHS = (
-    "January",
-    "February",
-    "March",
-    "April",
-    "May",
-    "June",
-    "July",
-    "August",
-    "September",
-    "October",
-    "November",
-    "December",
-)
 
 
 def generated_weather(site: Site, *, years: int, seed: int, skip: int = 0) -> Weather:

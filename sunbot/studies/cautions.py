@@ -81,9 +81,14 @@ def check_cautions(
     )
 
 
+def off_the_world_table(site: Site, weather: Weather) -> bool:
+    """Whether the light is read off the coarse table of the world."""
+    return site.climate is not None and site.climate.coarse and weather.kind == "generated"
+
+
 def coarse_climate(site: Site, weather: Weather, *, survival: float | None = None) -> Iterator[Caution]:
     """That the light is read off the table of the world; ``survival`` : share alive with 0.15 less light."""
-    if site.climate is None or not site.climate.coarse or weather.kind != "generated":
+    if not off_the_world_table(site, weather):
         return
     with_less = (
         "" if survival is None else f" With 15 % less light the robot is alive in {share_text(survival)} of years."
@@ -155,7 +160,7 @@ def _beyond_its_window(pack: Pack, box_c: FloatArray, *, step_h: float, years: i
 
 
 def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
-    pack, air_c = chain.pack(robot), _while_out(chain, robot, chain.weather_at(robot).table["temp_air"].to_numpy())
+    pack, air_c = chain.pack(robot), chain.while_out(robot, chain.weather_at(robot).table["temp_air"].to_numpy())
     coldest_c, hottest_c = (float(extreme) + robot.battery.box_rise_c for extreme in (air_c.min(), air_c.max()))
     cutoff_v, full_v = (float(np.interp(soc, pack.curve.soc, pack.curve.rest_v)) for soc in (pack.cutoff_soc, 1.0))
     return rail_cautions(
@@ -169,17 +174,11 @@ def _rails(chain: Chain, robot: Robot) -> tuple[Caution, ...]:
     )
 
 
-def _while_out(chain: Chain, robot: Robot, values: FloatArray) -> FloatArray:
-    """Values by weather step, of the steps in which the robot is out."""
-    within = chain.out(robot)
-    return values if within is None else values[within]
-
-
 def _battery(chain: Chain, robot: Robot) -> Iterator[Caution]:
     battery, weather = robot.battery, chain.weather_at(robot)
     pack = chain.pack(robot)
     box = box_of(chain, robot)
-    cold_c, box_c, offer_w = (_while_out(chain, robot, x) for x in (box.box_c, box.warm_c, chain.offer_w(robot)))
+    cold_c, box_c, offer_w = (chain.while_out(robot, x) for x in (box.box_c, box.warm_c, chain.offer_w(robot)))
     offered = float(offer_w.sum())
     for code, blocked, limit_c, word in (
         ("frost", box_c < pack.charge_min_c, pack.charge_min_c, "below"),

@@ -111,6 +111,11 @@ class Chain:
         out[lanes.row[lanes.step_h > 0]] = True
         return out
 
+    def while_out(self, robot: Robot, values: FloatArray) -> FloatArray:
+        """Values by weather step, of the steps in which the robot is out."""
+        within = self.out(robot)
+        return values if within is None else values[within]
+
     def supply(self, robot: Robot, *, watts: FloatArray | None = None, accounts: bool = True) -> Supply:
         """What the panels offer at the battery, for the robot's own wattage or for each of ``watts``."""
         sizes = np.array([robot.watts]) if watts is None else np.asarray(watts, dtype=float)

@@ -79,4 +79,4 @@ def heater_cautions(
 def two_digits(value: float, to_whole: Callable[[float], float] = round) -> str:
     """A number above 0 in two digits and no power of ten; ``to_whole`` floor or ceil keeps it on the safe side."""
     place = 10.0 ** (math.floor(math.log10(value)) - 1)
-    return f"{to_whole(value / place) * place:.6g}"
+    return f"{to_whole(round(value / place, 6)) * place:.6g}"

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
-from math import ceil, floor, log10
+from collections.abc import Iterator
+from math import ceil, floor
 
 import numpy as np
 
@@ -13,7 +13,7 @@ from ..inputs.robot import Robot
 from ..storage import Pack, pack_conditions
 from ..types import BoolArray, Caution, FloatArray
 from .chain import Chain
-from .heating import box_of
+from .heating import box_of, two_digits
 
 LEAST_BOX_C = -20.0
 """Colder than that no resistance is known; common practice: cells are not made to work below."""
@@ -67,7 +67,7 @@ def _charge_rate(chain: Chain, robot: Robot, filed: Robot, box_c: FloatArray, ou
     if pushed_a <= limit_a:
         return
     in_cold = f"; {slowest_c * battery.capacity_ah:.3g} A in the cold" if slowest_c < rate_c else ""
-    safe_a = _rounded(limit_a, floor)
+    safe_a = two_digits(limit_a, floor)
     remedy = f"The controller must be set to that limit (max_charge_a = {safe_a})"
     if controller.kind == "direct":
         remedy = f"A diode limits nothing: take a controller with max_charge_a = {safe_a}"
@@ -77,7 +77,7 @@ def _charge_rate(chain: Chain, robot: Robot, filed: Robot, box_c: FloatArray, ou
         f"The panels can push {pushed_a:.3g} A into the battery {when}; its cells take {limit_a:.3g} A "
         f"({rate_c:g} x {battery.capacity_ah:.3g} Ah{in_cold}), and nothing given holds it there. The answer counts "
         f"only what they may take; real cells would be damaged. {remedy}, or take a battery of "
-        f"{_rounded(pushed_a / rate_c, ceil)} Ah.",
+        f"{two_digits(pushed_a / rate_c, ceil)} Ah.",
     )
 
 
@@ -94,9 +94,3 @@ def _offered_a(chain: Chain, robot: Robot, filed: Robot) -> FloatArray:
     if controller.kind == "direct" or controller.max_charge_a is None:
         return amps
     return np.asarray(np.minimum(amps, controller.max_charge_a))
-
-
-def _rounded(value: float, to: Callable[[float], int]) -> str:
-    """Two digits, to the safe side."""
-    place = 10.0 ** (floor(log10(value)) - 1)
-    return f"{to(round(value / place, 6)) * place:.6g}"

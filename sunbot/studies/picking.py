@@ -16,7 +16,7 @@ from ..sky.other_years import other_years
 from ..types import Caution, FloatArray, IntArray
 from .autonomy_sizing import size_by_autonomy
 from .beside import Beside
-from .cautions import coarse_climate, few_years, standing_cautions
+from .cautions import coarse_climate, few_years, off_the_world_table, standing_cautions
 from .chain import Chain
 from .effort import Effort, Watcher, balance_cost, supply_cost
 from .frontier import WIDTH, Frontier, Judged
@@ -269,8 +269,7 @@ def _survival_map(frontier: Frontier, pairs: tuple[Pair, ...]) -> SurvivalMap | 
 
 def _survival_dimmed(chain: Chain, robot: Robot, sized: Robot | None) -> float | None:
     """Share of years the pair taken survives with 0.15 less light; None where nothing asks for it."""
-    coarse = robot.site.climate is not None and robot.site.climate.coarse
-    if sized is None or not coarse or chain.weather.kind != "generated":
+    if sized is None or not off_the_world_table(robot.site, chain.weather):
         return None
     return float(filed_and_dimmed(chain, sized)[1][1])
 

@@ -252,10 +252,8 @@ def warm_way_out(chain: Chain, robot: Robot) -> WayOut | None:
 
 def _in_the_cold(chain: Chain, robot: Robot) -> bool:
     """Whether the box is at times so cold that much charge is locked, or that harvest is kept out of the pack."""
-    pack, out = chain.pack(robot), chain.out(robot)
-    box_c, offer_w = box_of(chain, robot).warm_c, chain.offer_w(robot)
-    if out is not None:
-        box_c, offer_w = box_c[out], offer_w[out]
+    pack = chain.pack(robot)
+    box_c, offer_w = (chain.while_out(robot, x) for x in (box_of(chain, robot).warm_c, chain.offer_w(robot)))
     locked = 1.0 - float(usable_share(pack, np.quantile(box_c, RARE)))
     return locked >= COLD_NOTED or float(offer_w[box_c < pack.charge_min_c].sum()) >= RARE * float(offer_w.sum()) > 0
 
